@@ -1,0 +1,99 @@
+package record
+
+import (
+	"encoding/json"
+	"fmt"
+
+	"budgetcheck/budget/finding"
+	"budgetcheck/budget/unit"
+)
+
+// decode reads a line by the general path. meter and word are returned aside,
+// for the reader interns meters and counts unknown words.
+func decode(raw []byte) (l Line, meter, word string, wrong *finding.Finding) {
+	o := parseObject(raw)
+	if o.wrong != nil {
+		return l, "", "", o.wrong
+	}
+	word = o.word("k")
+	l.Kind = kindOf(word)
+	switch l.Kind {
+	case KindOpen:
+		l.Open = o.open()
+		l.At = l.Open.At
+	case KindPower:
+		l.At, meter = o.instant("at"), o.word("meter")
+		l.Power = unit.Power(o.number("w", "a power in W"))
+	case KindEnergy:
+		l.At, meter = o.instant("at"), o.word("meter")
+		l.Joules = unit.Joules(o.number("j", "a counter's reading in J"))
+		if o.has("wrap_j") {
+			l.Wrap = unit.Joules(o.number("wrap_j", "the counter's range in J"))
+			if l.Wrap == 0 {
+				o.fail(`"wrap_j" is 0`, "write the counter's range in J, or leave it out")
+			}
+		}
+	case KindUsed:
+		l.Used = o.used()
+	case KindWork:
+		l.At = o.instant("at")
+		l.Work = o.work()
+	case KindClose:
+		l.At = o.instant("at")
+		o.need("outcome", "write one of [ok pilot stopped failed cancelled]")
+		l.Close = &Close{choice(o, "outcome", OK, Pilot, Stopped, Failed, Cancelled)}
+	}
+	return l, meter, word, o.wrong
+}
+
+func (o *object) open() *Open {
+	if o.need("format", "write \"format\":1") && string(o.fields["format"]) != "1" {
+		o.fail(fmt.Sprintf("\"format\" is %s", clip(o.fields["format"])), "this version reads format 1; write that, or use a newer budgetcheck")
+	}
+	op := &Open{
+		Run: o.word("run"), Attempt: 1, Part: o.label("part"), Parts: 1, Host: o.text("host"),
+		Job: o.word("job"), Stage: o.text("stage"), At: o.instant("at"), Site: o.text("site"),
+		Machine: o.text("machine"), Commit: o.text("commit"), Branch: o.text("branch"),
+	}
+	if o.has("attempt") {
+		op.Attempt = o.whole("attempt", 1)
+	}
+	if o.has("parts") {
+		op.Parts = o.whole("parts", 1)
+	}
+	if op.Parts > 1 && op.Part == "" {
+		o.fail(`"parts" is above 1 but "part" is missing`, "say which part this is")
+	}
+	if o.has("pull") {
+		op.Pull = o.whole("pull", 1)
+	}
+	if o.has("reserved") {
+		op.Reserved = o.number("reserved", "the number of units of the machine")
+		if op.Reserved == 0 {
+			o.fail(`"reserved" is 0`, "write the number of units reserved, or leave it out for all")
+		}
+	}
+	if o.has("labels") && json.Unmarshal(o.fields["labels"], &op.Labels) != nil {
+		o.fail(`"labels" is not an object of texts`, `write it like {"team":"tide"}`)
+	}
+	return op
+}
+
+func (o *object) used() *Used {
+	u := &Used{From: o.instant("from"), To: o.instant("to"), Energy: unit.Energy(o.number("kwh", "an energy in kWh"))}
+	o.need("how", "write measured or estimated")
+	u.Measured = choice(o, "how", "measured", "estimated") == "measured"
+	if u.To <= u.From {
+		o.fail(fmt.Sprintf(`"to" (%s) is not after "from" (%s)`, u.To, u.From), "write the span that the total covers")
+	}
+	return u
+}
+
+func (o *object) work() *Work {
+	w := &Work{Unit: o.word("unit"), Done: o.number("done", "the work done so far")}
+	if o.has("planned") {
+		w.Planned = o.number("planned", "the work planned")
+	}
+	w.OfPart = choice(o, "of", "run", "part") == "part"
+	return w
+}
