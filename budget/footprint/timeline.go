@@ -1,0 +1,49 @@
+package footprint
+
+import (
+	"budgetcheck/budget/grid"
+	"budgetcheck/budget/unit"
+)
+
+// bucket is a span of time with one price: a step of the series, cut at UTC
+// hours. Energy is summed by bucket and priced at the end.
+type bucket struct {
+	from, to unit.Instant
+	price    grid.Price
+	measured unit.Sum[unit.Joules] // over all meters
+	filled   unit.Sum[unit.Joules]
+}
+
+// timeline is the buckets from a part's open on, made as they are needed.
+type timeline struct {
+	pricer  grid.Pricer
+	start   unit.Instant
+	buckets []bucket
+}
+
+// at is bucket n; every bucket before it must have been asked for.
+func (t *timeline) at(n int) *bucket {
+	if n == len(t.buckets) {
+		from := t.start
+		if n > 0 {
+			from = t.buckets[n-1].to
+		}
+		price := t.pricer.At(from)
+		t.buckets = append(t.buckets, bucket{from: from, to: min(price.Until, nextHour(from)), price: price})
+	}
+	return &t.buckets[n]
+}
+
+func nextHour(t unit.Instant) unit.Instant {
+	const hour = unit.Instant(unit.Hour)
+	into := t % hour
+	if into < 0 { // before 1970
+		into += hour
+	}
+	return t - into + hour
+}
+
+// overlap is how much of the bucket lies between from and to.
+func (b *bucket) overlap(from, to unit.Instant) unit.Duration {
+	return max(min(b.to, to).Sub(max(b.from, from)), 0)
+}
