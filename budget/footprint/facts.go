@@ -49,6 +49,7 @@ type Machine struct {
 type Facts struct {
 	Site    *Site
 	Machine *Machine
+	Assumed []string // what was assumed in them, for the run's notes
 }
 
 // Method is how all parts of a judgement are weighed, so that they can be

@@ -239,3 +239,6 @@ func (w *weighing) close(name string, m *meter) {
 }
 
 func (p *Part) doubt(d Doubt) { p.Doubts = append(p.Doubts, d) }
+
+// MeasuredEnergy is what the part's meters measured, without filled gaps.
+func (p *Part) MeasuredEnergy() unit.Energy { return p.metered - p.filled }

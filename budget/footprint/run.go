@@ -108,6 +108,15 @@ type Proven struct {
 // Figures are the terms of a run's mass and of its facility energy.
 type Figures struct{ Mass, Energy Terms }
 
+// note adds notes, each once.
+func (r *Run) note(notes ...string) {
+	for _, n := range notes {
+		if !slices.Contains(r.Notes, n) {
+			r.Notes = append(r.Notes, n)
+		}
+	}
+}
+
 // Known tells whether the run's total is known and nothing speaks against it.
 func (r *Run) Known() bool { return r.Total != nil && len(r.Doubts) == 0 }
 
@@ -133,7 +142,8 @@ func Combine(parts []*Part, m Method) *Run {
 	r.Host = shared(parts, func(p *Part) string { return p.Open.Host })
 	for _, p := range parts {
 		r.Start, r.End = min(r.Start, p.Open.At), max(r.End, p.End)
-		r.Notes = append(r.Notes, p.Notes...)
+		r.note(p.Notes...)
+		r.note(p.Facts.Assumed...)
 		r.Doubts = append(r.Doubts, p.Doubts...)
 		r.Parts = append(r.Parts, p.show())
 		if p.Findings.Len() > 0 {

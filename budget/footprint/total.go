@@ -124,10 +124,10 @@ func (r *Run) zones() string {
 // noteSources says what of the price is not measured.
 func (r *Run) noteSources() {
 	if s := r.Priced.Expected; s > 0 {
-		r.Notes = append(r.Notes, fmt.Sprintf("provisional: %s of the energy lies after the series' end and has the expected intensity", s))
+		r.note(fmt.Sprintf("provisional: %s of the energy lies after the series' end and has the expected intensity", s))
 	}
 	if s := r.Priced.Annual; s > 0 {
-		r.Notes = append(r.Notes, fmt.Sprintf("%s of the energy is priced with the site's annual mean", s))
+		r.note(fmt.Sprintf("%s of the energy is priced with the site's annual mean", s))
 	}
 }
 
@@ -155,7 +155,7 @@ func (r *Run) masses(m Method) {
 
 func (r *Run) total(m Method, embodied unit.Mass) {
 	if r.Embodied == nil {
-		r.Notes = append(r.Notes, "no embodied emissions are declared for every machine: the total is smaller for it")
+		r.note("no embodied emissions are declared for every machine: the total is smaller for it")
 	}
 	r.Total = known(*r.Operational + embodied)
 	if w := r.Work; w != nil && w.Done > 0 {

@@ -35,6 +35,9 @@ func ParseDuration(text string) (Duration, error) {
 		piece := rest[:pieceEnd(rest)]
 		rest = strings.TrimSpace(rest[len(piece):])
 		v, err := durations.parse(piece)
+		if err != nil && piece != strings.TrimSpace(text) {
+			return 0, fmt.Errorf("%q: %w", clip(text), err)
+		}
 		if err != nil {
 			return 0, err
 		}
@@ -42,14 +45,18 @@ func ParseDuration(text string) (Duration, error) {
 	}
 	nanos := math.Round(seconds * 1e9)
 	if nanos >= math.MaxInt64 {
-		return 0, fmt.Errorf("%q is not a duration: longer than 292 years", clip(text))
+		return 0, fmt.Errorf("%q is not a duration: longer than 292 years; write it like %q", clip(text), durations.example)
 	}
 	return Duration(nanos), nil
 }
 
-// pieceEnd is the end of the first number and unit in text.
+// pieceEnd is the end of the first number and unit in text, or of text where
+// no number starts it.
 func pieceEnd(text string) int {
 	end := numberEnd(text)
+	if end == 0 {
+		return len(text)
+	}
 	for end < len(text) && (text[end] < '0' || text[end] > '9') {
 		end++
 	}

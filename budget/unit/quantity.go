@@ -40,7 +40,7 @@ var (
 	energies = scale{
 		what: "an energy", example: "350 Wh",
 		prints:  []step{{"µWh", 1e-9}, {"mWh", 1e-6}, {"Wh", 1e-3}, {"kWh", 1}, {"MWh", 1e3}, {"GWh", 1e6}, {"TWh", 1e9}},
-		accepts: []step{{"J", 1 / JoulesPerKWh}, {"kJ", 1e3 / JoulesPerKWh}, {"MJ", 1e6 / JoulesPerKWh}, {"GJ", 1e9 / JoulesPerKWh}},
+		accepts: []step{{"uWh", 1e-9}, {"J", 1 / JoulesPerKWh}, {"kJ", 1e3 / JoulesPerKWh}, {"MJ", 1e6 / JoulesPerKWh}, {"GJ", 1e9 / JoulesPerKWh}},
 	}
 	powers = scale{
 		what: "a power", example: "2.8 kW",
@@ -90,12 +90,15 @@ func ParseShare(text string) (Share, error) {
 	return Share(v), err
 }
 
-// plainGas drops the name of the gas: "g CO2e/kWh" becomes "g/kWh". Any other
-// gas stays and is refused, for its warming potential would have to be guessed.
+// plainGas drops the name of the gas after a unit: "g CO2e/kWh" becomes
+// "g/kWh". Any other gas stays and is refused, for its warming potential would
+// have to be guessed.
 func plainGas(text string) string {
 	for _, gas := range []string{"CO2eq", "CO2-eq", "CO2e"} {
-		if before, after, found := strings.Cut(text, gas); found {
-			return strings.TrimRight(before, " ") + after
+		before, after, found := strings.Cut(text, gas)
+		before = strings.TrimRight(before, " ")
+		if _, symbol, err := split(before); found && err == nil && symbol != "" {
+			return before + after
 		}
 	}
 	return text
@@ -129,8 +132,14 @@ func (p Power) Text(digits int) string { return powers.text(float64(p), digits) 
 // Text prints the quantity with its unit and the given number of significant figures.
 func (i Intensity) Text(digits int) string { return intensities.text(float64(i), digits) }
 
-// Text prints the share as a percentage with the given number of significant figures.
-func (s Share) Text(digits int) string { return figures(float64(s)*100, digits) + " %" }
+// Text prints the share as a percentage with the given number of significant
+// figures, or as a plain number where 100 times it would cost the last ones.
+func (s Share) Text(digits int) string {
+	if digits > 15 {
+		return figures(float64(s), digits)
+	}
+	return figures(float64(s)*100, digits) + " %"
+}
 
 // Texter is a quantity that prints with any number of significant figures.
 type Texter interface{ Text(digits int) string }
@@ -142,13 +151,19 @@ func Apart[T interface {
 	comparable
 }](a, b T) (string, string) {
 	const most = 17 // figures that tell any two floats apart
-	for n := 3; n < most && a != b; n++ {
+	for n := 3; n <= most && a != b; n++ {
 		if x, y := a.Text(n), b.Text(n); x != y {
 			return x, y
 		}
 	}
 	return a.Text(3), b.Text(3)
 }
+
+// PlusMinus prints the mass with its expanded uncertainty, "2.37 ± 0.46 kg".
+func (m Mass) PlusMinus(u Mass) string { return masses.interval(float64(m), float64(u)) }
+
+// PlusMinus prints the energy with its expanded uncertainty.
+func (e Energy) PlusMinus(u Energy) string { return energies.interval(float64(e), float64(u)) }
 
 // Signed prints a difference with its sign, "+1.20 kg".
 func Signed[T interface {

@@ -2,7 +2,10 @@ package unit
 
 import (
 	"fmt"
+	"strconv"
 	"strings"
+	"unicode"
+	"unicode/utf8"
 )
 
 // Work is an amount of work in functional units, "100000 step"
@@ -15,11 +18,12 @@ type Work struct {
 // ParseWork reads text like "100000 step".
 func ParseWork(text string) (Work, error) {
 	number, word, err := split(text)
-	if err != nil || number == 0 || !oneWord(word) {
+	amount, tooLarge := times(number, 1)
+	if err != nil || tooLarge != nil || amount == 0 || !oneWord(word) {
 		return Work{}, fmt.Errorf("%q is not an amount of work; write a number above zero and one word, like %q",
 			clip(text), "100000 step")
 	}
-	return Work{number, word}, nil
+	return Work{amount, word}, nil
 }
 
 func (w Work) String() string { return figures(w.Amount, 3) + " " + w.Unit }
@@ -45,7 +49,7 @@ func ParseRate(text string) (Rate, error) {
 		return Rate{}, fmt.Errorf("%q is not a rate: %w", clip(text), err)
 	}
 	work := Work{1, strings.TrimSpace(per)}
-	if !oneWord(work.Unit) || numberEnd(work.Unit) > 0 {
+	if !oneWord(work.Unit) {
 		if work, err = ParseWork(per); err != nil {
 			return Rate{}, fmt.Errorf("%q is not a rate: %w", clip(text), err)
 		}
@@ -62,11 +66,14 @@ func RateOf(m Mass, w Work, per float64) Rate {
 func (r Rate) PerUnit() Mass { return Mass(float64(r.Mass) / r.Per) }
 
 // Text prints the rate with the given number of significant figures of mass.
-func (r Rate) Text(digits int) string {
+func (r Rate) Text(digits int) string { return r.Worded(r.Mass.Text(digits)) }
+
+// Worded puts a mass that is already printed before the rate's amount of work.
+func (r Rate) Worded(mass string) string {
 	if r.Per == 1 {
-		return r.Mass.Text(digits) + " per " + r.Unit
+		return mass + " per " + r.Unit
 	}
-	return fmt.Sprintf("%s per %v %s", r.Mass.Text(digits), r.Per, r.Unit)
+	return mass + " per " + strconv.FormatFloat(r.Per, 'f', -1, 64) + " " + r.Unit
 }
 
 func (r Rate) String() string { return r.Text(3) }
@@ -74,4 +81,9 @@ func (r Rate) String() string { return r.Text(3) }
 // Set parses text into the value.
 func (r *Rate) Set(text string) error { return set(r, text, ParseRate) }
 
-func oneWord(s string) bool { return s != "" && !strings.ContainsAny(s, " \t\r\n") }
+// oneWord tells whether s can name a functional unit. The letter at its start
+// keeps what is left of a misread number, like ",000step", from naming one.
+func oneWord(s string) bool {
+	first, _ := utf8.DecodeRuneInString(s)
+	return unicode.IsLetter(first) && !strings.ContainsFunc(s, unicode.IsSpace)
+}

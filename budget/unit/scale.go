@@ -1,8 +1,10 @@
 package unit
 
 import (
+	"errors"
 	"fmt"
 	"math"
+	"math/big"
 	"slices"
 	"strconv"
 	"strings"
@@ -35,13 +37,14 @@ func (s *scale) parse(text string) (float64, error) {
 		return 0, fmt.Errorf("%q is not %s: %s; use one of %s, like %q",
 			clip(text), s.what, unknown(symbol), s.symbols(), s.example)
 	}
-	value := number * size
-	if math.IsInf(value, 0) {
-		return 0, fmt.Errorf("%q is not %s: too large", clip(text), s.what)
+	value, err := times(number, size)
+	if err != nil {
+		return 0, fmt.Errorf("%q is not %s: %w; write it like %q", clip(text), s.what, err, s.example)
 	}
 	return value, nil
 }
 
+// unknown says what is wrong with a unit that the scale does not have.
 func unknown(symbol string) string {
 	if symbol == "" {
 		return "it has no unit"
@@ -69,41 +72,78 @@ func (s *scale) symbols() string {
 
 // text prints value, in base units, with the given number of significant
 // figures and the largest prefix that keeps at least one figure before the
-// point. The prefix is chosen after rounding: 999.9 g is 1.00 kg.
+// point. What rounds up to the next prefix is one of it: 999.9 g is 1.00 kg.
 func (s *scale) text(value float64, digits int) string {
-	if value == 0 {
-		return "0 " + s.base()
+	if value == 0 || digits > 15 { // a prefix would cost the last figures
+		return figures(value, digits) + " " + s.base()
 	}
-	rounded := math.Abs(round(value, digits))
 	best := s.prints[0]
 	for _, st := range s.prints[1:] {
 		// The factor absorbs the representation error of sizes below one.
-		if rounded >= st.size*(1-1e-12) {
-			best = st
+		if math.Abs(round(value/best.size, digits))*best.size < st.size*(1-1e-15) {
+			break
 		}
+		best, value = st, math.Copysign(max(math.Abs(value), st.size), value)
 	}
 	return figures(value/best.size, digits) + " " + best.symbol
 }
 
-// base is the symbol that zero prints with: that of the base unit, else (for
-// shares, in per cent) the smallest.
-func (s *scale) base() string {
-	i := slices.IndexFunc(s.prints, func(st step) bool { return st.size == 1 })
-	return s.prints[max(i, 0)].symbol
+// interval prints value ± expanded in one prefix, that of the larger, and with
+// the decimals of value's three significant figures.
+func (s *scale) interval(value, expanded float64) string {
+	larger := max(math.Abs(value), math.Abs(expanded))
+	text := s.text(larger, 3)
+	number, symbol, _ := strings.Cut(text, " ")
+	size, _ := s.size(symbol)
+	decimals := 0
+	if _, after, found := strings.Cut(number, "."); found {
+		decimals = len(after)
+	}
+	return strconv.FormatFloat(value/size, 'f', decimals, 64) + " ± " + strconv.FormatFloat(expanded/size, 'f', decimals, 64) + " " + symbol
 }
 
-// split cuts text into its number and what follows it.
-func split(text string) (number float64, rest string, err error) {
+// base is the symbol of the base unit, which every scale with prefixes prints.
+func (s *scale) base() string {
+	i := slices.IndexFunc(s.prints, func(st step) bool { return st.size == 1 })
+	return s.prints[i].symbol
+}
+
+// split cuts text into its number, unsigned and decimal, and what follows it.
+func split(text string) (number, rest string, err error) {
 	text = strings.TrimSpace(text)
 	end := numberEnd(text)
-	if end == 0 {
-		return 0, "", fmt.Errorf("no number at the start")
+	number, rest = text[:end], strings.TrimSpace(text[end:])
+	switch {
+	case strings.HasPrefix(text, "-"):
+		return "", "", errors.New("it is below zero")
+	case end == 0:
+		return "", "", errors.New("no number at the start")
+	case strings.HasPrefix(rest, ","):
+		return "", "", errors.New("a comma stands in the number")
 	}
-	number, err = strconv.ParseFloat(text[:end], 64)
+	return number, rest, nil
+}
+
+// times multiplies as decimals and rounds once, so that "1.005 kg" is 1005 g
+// and not the float below it: exactly at a limit is within it, in any prefix.
+func times(number string, size float64) (float64, error) {
+	value, err := strconv.ParseFloat(number, 64)
 	if err != nil {
-		return 0, "", fmt.Errorf("the number is too large")
+		return 0, errors.New("the number is too large")
 	}
-	return number, strings.TrimSpace(text[end:]), nil
+	if value == 0 { // or too small for a float; as a fraction it could fill the memory
+		return 0, nil
+	}
+	a, okA := new(big.Rat).SetString(number)
+	b, okB := new(big.Rat).SetString(strconv.FormatFloat(size, 'g', -1, 64))
+	if !okA || !okB {
+		return 0, errors.New("the number cannot be read")
+	}
+	value, _ = a.Mul(a, b).Float64()
+	if math.IsInf(value, 0) {
+		return 0, errors.New("the number is too large")
+	}
+	return value, nil
 }
 
 // numberEnd is the length of the unsigned decimal number that text starts
@@ -167,10 +207,11 @@ func figures(value float64, digits int) string {
 	if value == 0 {
 		return "0"
 	}
-	rounded := round(value, digits)
-	exponent := int(math.Floor(math.Log10(math.Abs(rounded)) + 1e-12))
-	if exponent < -4 || exponent > 9 {
-		return strconv.FormatFloat(value, 'e', digits-1, 64)
+	scientific := strconv.FormatFloat(value, 'e', digits-1, 64)
+	_, after, _ := strings.Cut(scientific, "e")
+	exponent, err := strconv.Atoi(after)
+	if err != nil || exponent < -4 || exponent > 9 { // no exponent: not finite
+		return scientific
 	}
-	return strconv.FormatFloat(rounded, 'f', max(digits-1-exponent, 0), 64)
+	return strconv.FormatFloat(round(value, digits), 'f', max(digits-1-exponent, 0), 64)
 }

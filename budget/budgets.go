@@ -1,0 +1,203 @@
+package budget
+
+import (
+	"fmt"
+
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/unit"
+)
+
+// budgets rules on every budget of the branch that has something to judge.
+func (j *judgement) budgets() {
+	for _, b := range j.policy.Budgets {
+		if !matches(b.Branch, j.c.Branch) {
+			continue
+		}
+		if b.Per != "run" {
+			r := b.ruling(j.c.Branch)
+			r.State, r.Reason = Unproven, fmt.Sprintf("not judged yet: this version keeps no books, which per = %q needs", b.Per)
+			j.rule(r)
+			continue
+		}
+		if r, ok := j.perRun(b); ok {
+			j.rule(r)
+			j.account(b, r)
+		}
+	}
+}
+
+// ruling is an empty ruling of the budget.
+func (b *Budget) ruling(branch string) Ruling {
+	limit := b.Limit.base()
+	return Ruling{Kind: KindBudget, Name: b.Name, Branch: branch, Job: b.Job, Per: b.Per, Limit: &limit, Unit: b.Limit.unit(),
+		LimitText: b.Limit.String(), PolicyLine: b.Line, PolicyFile: b.File}
+}
+
+// covers tells whether the budget is about the run.
+func (b *Budget) covers(job, stage string) bool {
+	return matches(b.Job, job) && matches(b.Stage, stage)
+}
+
+// perRun judges every run by itself; the worst is shown. ok is false where no
+// run matches and none has to: then there is nothing to rule on.
+func (j *judgement) perRun(b *Budget) (worst Ruling, ok bool) {
+	take := func(r Ruling) {
+		if !ok || r.worse(worst) {
+			worst, ok = r, true
+		}
+	}
+	runs := 0
+	for _, run := range j.head {
+		if b.covers(run.Job, run.Stage) {
+			runs++
+			take(j.judgeRun(b, run))
+		}
+	}
+	for _, job := range j.policy.Jobs {
+		// A job without a stage may run at any that the budget is about.
+		if job.Required && matches(b.Job, job.Name) && (job.Stage == "" || matches(b.Stage, job.Stage)) && !j.satisfied(job) {
+			r := b.ruling(j.c.Branch)
+			r.Job, r.State, r.Reason = job.Name, Unproven, j.missing(job)
+			take(r)
+		}
+	}
+	if runs > 1 && worst.Observed != nil {
+		worst.Reason = joinReason(fmt.Sprintf("largest of %d runs", runs), worst.Reason)
+	}
+	return worst, ok
+}
+
+func joinReason(a, b string) string {
+	if b == "" {
+		return a
+	}
+	return a + "; " + b
+}
+
+// worse orders rulings of one budget by state, then by what was observed.
+func (r Ruling) worse(o Ruling) bool {
+	if r.State != o.State {
+		return severity[r.State] < severity[o.State]
+	}
+	return r.Observed != nil && (o.Observed == nil || *r.Observed > *o.Observed)
+}
+
+// amount is a run's figure against a limit, in the limit's base unit.
+type amount struct {
+	value float64
+	u     float64 // standard uncertainty; 0 where none is declared
+	hasU  bool
+}
+
+// judgeRun judges one run. Doubtful evidence leaves the ruling unproven, but
+// what is proven to be spent is spent: where the measured, priced part alone
+// passes the limit, the run is over however thin the rest.
+func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
+	r := b.ruling(j.c.Branch)
+	r.Job = run.Job
+	if reason := b.Limit.unfit(run); reason != "" {
+		r.State, r.Reason = Unproven, reason
+		return r
+	}
+	a, known := b.Limit.of(run, j.policy.Method().Uncertainty)
+	if known {
+		j.settle(&r, b, a)
+	}
+	if known && len(run.Doubts) == 0 {
+		return r
+	}
+	proven := b.Limit.proven(run, j.policy.Method().Uncertainty)
+	if !run.Refuted() && j.state(b, proven) == Over {
+		j.settle(&r, b, proven)
+		r.Reason = "the measured, priced part alone passes the limit"
+		return r
+	}
+	r.State, r.Reason, r.Conformance = Unproven, "the evidence is in doubt", nil
+	if len(run.Doubts) > 0 {
+		r.Reason = run.Doubts[0].Reason
+	}
+	return r
+}
+
+// settle writes what the amount makes of the limit.
+func (j *judgement) settle(r *Ruling, b *Budget, a amount) {
+	limit := b.Limit.base()
+	r.State = j.state(b, a)
+	r.Observed = &a.value
+	if limit > 0 {
+		share := a.value / limit
+		r.Share = &share
+	}
+	if a.hasU && a.u > 0 {
+		conformance := distuv.UnitNormal.CDF((limit - a.value) / a.u)
+		r.Conformance = &conformance
+	}
+	r.ObservedText, r.LimitText, r.ExcessText = b.Limit.texts(a.value)
+	if a.hasU {
+		r.IntervalText = b.Limit.interval(a.value, 2*a.u)
+	}
+}
+
+// state applies the decision rule, with the expanded uncertainty U = 2u where
+// it is guarded (JCGM 106:2012; ILAC-G8:09/2019), and warn_at. Exactly at the
+// limit is within.
+func (j *judgement) state(b *Budget, a amount) State {
+	st := decide(j.policy.Account.Decision, a.value, 2*a.u, b.Limit.base())
+	if st == Within && b.WarnAt != nil && a.value > float64(*b.WarnAt)*b.Limit.base() {
+		return Near
+	}
+	return st
+}
+
+// decide compares an estimate y with expanded uncertainty with a limit.
+func decide(rule Decision, y, expanded, limit float64) State {
+	if rule == Simple {
+		expanded = 0
+	}
+	switch {
+	case y+expanded <= limit:
+		return Within
+	case y <= limit:
+		return Near
+	case y-expanded <= limit:
+		return Unproven
+	}
+	return Over
+}
+
+// account shows a mass budget as an account.
+func (j *judgement) account(b *Budget, r Ruling) {
+	if b.Limit.Mass == nil {
+		return
+	}
+	a := AccountLine{Name: b.Name, Per: b.Per, Limit: *b.Limit.Mass, State: r.State}
+	if r.Observed != nil {
+		m := unit.Mass(*r.Observed)
+		a.Change, a.Carried = &m, &m
+	}
+	a.Page = append(page(b, j.base, false), page(b, j.head, true)...)
+	j.s.Accounts = append(j.s.Accounts, a)
+}
+
+// page lists the runs of one side by job and stage, at so much each.
+func page(b *Budget, runs []*footprint.Run, head bool) (lines []PageLine) {
+	for _, group := range byJob(runs) {
+		first := group[0]
+		if !b.covers(first.Job, first.Stage) {
+			continue
+		}
+		totals := totals(group)
+		if len(totals) == 0 {
+			continue
+		}
+		line := PageLine{Job: first.Job, Stage: first.Stage, Head: head, Runs: len(totals), Each: mean(totals)}
+		if len(totals) > 1 {
+			low, high := extremes(totals)
+			line.Low, line.High = &low, &high
+		}
+		lines = append(lines, line)
+	}
+	return lines
+}

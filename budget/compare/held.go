@@ -1,0 +1,60 @@
+// Package compare tells how the runs of a change differ from those of its base.
+//
+// A base and a head run differ in code and in weather. Held figures take the
+// weather out: every run on both sides is restated with the base's mean
+// intensity and mean PUE, so that duration, zone and hour of day do not matter.
+package compare
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/stat"
+
+	"budgetcheck/budget/unit"
+)
+
+// Sample is one run. All fields are above zero, Embodied may be zero.
+type Sample struct {
+	Machine     unit.Energy
+	Facility    unit.Energy
+	Operational unit.Mass
+	Embodied    unit.Mass
+}
+
+// Held are the figures of two sides with the grid held: geometric means.
+type Held struct {
+	Base, Head unit.Mass
+	Ratio      float64 // Head/Base - 1
+}
+
+// Hold restates the runs of both sides as machine energy times the base's mean
+// PUE and intensity, plus embodied emissions. ok is false where a side has no
+// run, or one without energy or emissions, of which no ratio can be told.
+func Hold(base, head []Sample) (h Held, ok bool) {
+	var machine, facility unit.Sum[unit.Energy]
+	var operational unit.Sum[unit.Mass]
+	for _, s := range base {
+		machine.Add(s.Machine)
+		facility.Add(s.Facility)
+		operational.Add(s.Operational)
+	}
+	perMachine := float64(operational.Value()) / float64(machine.Value()) // P0 x I0
+	h.Base, h.Head = heldMean(base, perMachine), heldMean(head, perMachine)
+	h.Ratio = float64(h.Head)/float64(h.Base) - 1
+	return h, h.Base > 0 && h.Head > 0 && !math.IsInf(h.Ratio, 0)
+}
+
+// heldMean is the geometric mean of the runs' held totals; 0 where there is none.
+func heldMean(runs []Sample, perMachine float64) unit.Mass {
+	held := make([]float64, len(runs))
+	for n, s := range runs {
+		held[n] = float64(s.Machine)*perMachine + float64(s.Embodied)
+		if !(held[n] > 0) {
+			return 0
+		}
+	}
+	if len(held) == 0 {
+		return 0
+	}
+	return unit.Mass(stat.GeometricMean(held, nil))
+}

@@ -1,0 +1,123 @@
+package budget
+
+import (
+	"fmt"
+
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/unit"
+)
+
+// base is the limit in its base unit: g, kWh, or g for one functional unit.
+func (l Limit) base() float64 {
+	switch {
+	case l.Mass != nil:
+		return float64(*l.Mass)
+	case l.Energy != nil:
+		return float64(*l.Energy)
+	}
+	return float64(l.Rate.PerUnit())
+}
+
+// unit names the base unit.
+func (l Limit) unit() string {
+	switch {
+	case l.Mass != nil:
+		return "g"
+	case l.Energy != nil:
+		return "kWh"
+	}
+	return "g/" + l.Rate.Unit
+}
+
+// unfit tells why the run cannot be held against the limit at all; "" if it can.
+func (l Limit) unfit(r *footprint.Run) string {
+	switch {
+	case l.Rate == nil:
+		return ""
+	case r.Work == nil:
+		return fmt.Sprintf("run %s has no work lines; the limit is per %s", r.Run, l.Rate.Unit)
+	case r.Work.Unit != l.Rate.Unit:
+		return fmt.Sprintf("work of run %s is told in %s, the limit is per %s", r.Run, r.Work.Unit, l.Rate.Unit)
+	case r.Work.Done == 0:
+		return fmt.Sprintf("run %s has done no work", r.Run)
+	}
+	return ""
+}
+
+// of is the run's figure; known is false where it is absent.
+func (l Limit) of(r *footprint.Run, d footprint.Declared) (a amount, known bool) {
+	switch {
+	case l.Energy != nil && r.Facility != nil:
+		a.value = float64(*r.Facility)
+		a.u, a.hasU = r.Terms.Energy.U(d)
+	case l.Energy == nil && r.Total != nil:
+		a.value = float64(*r.Total)
+		a.u, a.hasU = r.Terms.Mass.U(d)
+	default:
+		return a, false
+	}
+	return l.perWork(a, r), true
+}
+
+// proven is what the run's measured, priced part alone comes to. Its
+// uncertainty is taken in proportion.
+func (l Limit) proven(r *footprint.Run, d footprint.Declared) amount {
+	a := amount{value: float64(r.Proven.Total)}
+	terms, whole := r.Terms.Mass, r.Total != nil
+	if l.Energy != nil {
+		a.value, terms, whole = float64(r.Proven.Facility), r.Terms.Energy, r.Facility != nil
+	}
+	if whole {
+		a.u, a.hasU = terms.U(d)
+	}
+	return l.perWork(a, r)
+}
+
+func (l Limit) perWork(a amount, r *footprint.Run) amount {
+	if l.Rate != nil {
+		a.value /= r.Work.Done
+		a.u /= r.Work.Done
+	}
+	return a
+}
+
+// text prints a value in the limit's unit.
+func (l Limit) text(v float64) string {
+	switch {
+	case l.Mass != nil:
+		return unit.Mass(v).String()
+	case l.Energy != nil:
+		return unit.Energy(v).String()
+	}
+	return l.rate(v).String()
+}
+
+// interval prints a value with its expanded uncertainty.
+func (l Limit) interval(v, expanded float64) string {
+	switch {
+	case l.Mass != nil:
+		return unit.Mass(v).PlusMinus(unit.Mass(expanded))
+	case l.Energy != nil:
+		return unit.Energy(v).PlusMinus(unit.Energy(expanded))
+	}
+	r, u := l.rate(v), l.rate(expanded)
+	return r.Worded(r.Mass.PlusMinus(u.Mass))
+}
+
+// rate tells a mass per functional unit in the way that the limit is written.
+func (l Limit) rate(perUnit float64) unit.Rate {
+	return unit.Rate{Mass: unit.Mass(perUnit * l.Rate.Per), Per: l.Rate.Per, Unit: l.Rate.Unit}
+}
+
+// texts prints an observed value beside the limit, and their difference.
+func (l Limit) texts(observed float64) (value, limit, excess string) {
+	switch {
+	case l.Mass != nil:
+		value, limit = unit.Apart(unit.Mass(observed), *l.Mass)
+	case l.Energy != nil:
+		value, limit = unit.Apart(unit.Energy(observed), *l.Energy)
+	default:
+		value, limit = unit.Apart(l.rate(observed), *l.Rate)
+	}
+	return value, limit, l.text(observed - l.base())
+}

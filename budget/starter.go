@@ -1,0 +1,122 @@
+package budget
+
+import (
+	"fmt"
+	"slices"
+	"strconv"
+
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/unit"
+)
+
+// room is how far a starter limit lies above the largest run seen.
+const room = 1.25
+
+// Starter is what init fills its templates with.
+type Starter struct {
+	Sites    []string
+	Machines []StarterMachine
+	Jobs     []StarterJob
+	Series   []string
+	Unknown  []string // what the records cannot tell and a person must
+}
+
+// StarterMachine is a kind of machine as records show it.
+type StarterMachine struct {
+	Name   string
+	Units  float64
+	Meters int
+}
+
+// StarterJob is a job as records show it.
+type StarterJob struct {
+	Name, Stage string
+	Limit       string // room above the largest run; empty where no run has a figure
+}
+
+// Quote writes a text as a TOML string. Records are untrusted even here.
+func (Starter) Quote(text string) string {
+	quoted := strconv.QuoteToASCII(text)
+	var out []byte
+	for i := 0; i < len(quoted); i++ {
+		if quoted[i] == '\\' && (quoted[i+1] == 'x' || quoted[i+1] == 'a' || quoted[i+1] == 'v') {
+			return fmt.Sprintf("%q", "?") // no byte of these stands in a valid name
+		}
+		if quoted[i] == '\\' {
+			out = append(out, quoted[i])
+			i++
+		}
+		out = append(out, quoted[i])
+	}
+	return string(out)
+}
+
+// NewStarter collects jobs, sites, machines and limits from runs that were
+// weighed without a policy. Without a series the limits are energies.
+func NewStarter(runs []*footprint.Run, series []string) Starter {
+	s := Starter{Series: series}
+	for _, r := range runs {
+		for _, part := range r.Pieces {
+			s.place(part)
+		}
+	}
+	slices.Sort(s.Sites)
+	for _, group := range byJob(runs) {
+		s.Jobs = append(s.Jobs, StarterJob{group[0].Job, group[0].Stage, limitFrom(group)})
+	}
+	s.unknown()
+	return s
+}
+
+func (s *Starter) place(part *footprint.Part) {
+	o := part.Open
+	if o.Site != "" && !slices.Contains(s.Sites, o.Site) {
+		s.Sites = append(s.Sites, o.Site)
+	}
+	if o.Machine == "" {
+		return
+	}
+	n := slices.IndexFunc(s.Machines, func(m StarterMachine) bool { return m.Name == o.Machine })
+	if n < 0 {
+		n = len(s.Machines)
+		s.Machines = append(s.Machines, StarterMachine{Name: o.Machine, Units: 1})
+	}
+	m := &s.Machines[n]
+	m.Units = max(m.Units, o.Reserved)
+	if o.Reserved == 0 { // the whole machine: all its meters are there
+		m.Meters = max(m.Meters, len(part.Meters))
+	}
+}
+
+// limitFrom leaves room above the largest run.
+func limitFrom(runs []*footprint.Run) string {
+	var mass unit.Mass
+	var energy unit.Energy
+	for _, r := range runs {
+		if r.Total != nil {
+			mass = max(mass, *r.Total)
+		}
+		if r.Facility != nil {
+			energy = max(energy, *r.Facility)
+		}
+	}
+	switch {
+	case mass > 0:
+		return (mass * room).String()
+	case energy > 0:
+		return (energy * room).String()
+	}
+	return ""
+}
+
+func (s *Starter) unknown() {
+	for _, site := range s.Sites {
+		s.Unknown = append(s.Unknown, fmt.Sprintf("the grid zone of site %s (its own name is taken) and its PUE (1 is taken)", site))
+	}
+	for _, m := range s.Machines {
+		s.Unknown = append(s.Unknown, fmt.Sprintf("of machine %s: units, measured share (1 is taken), embodied emissions, idle and rated power", m.Name))
+	}
+	if len(s.Series) == 0 {
+		s.Unknown = append(s.Unknown, "the carbon intensity: name your series in [grid] (limits are energies until then)")
+	}
+}

@@ -1,0 +1,99 @@
+package main
+
+import (
+	"errors"
+	"flag"
+	"fmt"
+	"strings"
+	"time"
+
+	"budgetcheck/budget/unit"
+)
+
+// policyName is the policy that is read where none is named.
+const policyName = "budgetcheck.toml"
+
+// options are the flags that commands share by name.
+type options struct {
+	policy, head, base, grid list
+	branch                   string
+	pull                     int
+	commit, baseCommit       string
+	now                      string
+	out                      string
+	json                     bool
+
+	rest []string // arguments after the flags
+}
+
+// parse reads the flags of one command: those that the command names.
+func (o *options) parse(name string, args []string, s streams, flags ...string) error {
+	set := flag.NewFlagSet("budgetcheck "+name, flag.ContinueOnError)
+	var usage strings.Builder
+	set.SetOutput(&usage)
+	o.define(set, flags)
+	err := set.Parse(args)
+	o.rest = set.Args()
+	switch {
+	case errors.Is(err, flag.ErrHelp):
+		fmt.Fprint(s.out, usage.String())
+		return err
+	case err != nil:
+		return fmt.Errorf("%w; see budgetcheck %s -h", err, name)
+	}
+	return nil
+}
+
+func (o *options) define(set *flag.FlagSet, flags []string) {
+	lists := map[string]struct {
+		to   *list
+		does string
+	}{
+		"policy": {&o.policy, "policy `file` (default " + policyName + "); may be repeated, tables add up"},
+		"head":   {&o.head, "`glob` of the records to judge; may be repeated"},
+		"base":   {&o.base, "`glob` of the records to compare with; may be repeated"},
+		"grid":   {&o.grid, "`glob` of series files, besides those of the policy; may be repeated"},
+	}
+	texts := map[string]struct {
+		to   *string
+		does string
+	}{
+		"branch":      {&o.branch, "`name` of the branch; with -pull the target branch"},
+		"commit":      {&o.commit, "`id` of the head commit"},
+		"base-commit": {&o.baseCommit, "`id` of the base commit"},
+		"now":         {&o.now, "RFC 3339 `time` to judge at, for repeatable output (default: the clock)"},
+		"out":         {&o.out, "`folder` to write to"},
+	}
+	for _, f := range flags {
+		switch {
+		case lists[f].to != nil:
+			set.Var(lists[f].to, f, lists[f].does)
+		case texts[f].to != nil:
+			set.StringVar(texts[f].to, f, "", texts[f].does)
+		case f == "pull":
+			set.IntVar(&o.pull, f, 0, "`number` of the pull request")
+		case f == "json":
+			set.BoolVar(&o.json, f, false, "write JSON to standard output")
+		}
+	}
+}
+
+// noRest refuses arguments that no flag took.
+func (o *options) noRest() error {
+	if len(o.rest) > 0 {
+		return fmt.Errorf("unexpected argument %q; globs are given by flags, and in quotation marks so that the shell leaves them alone", o.rest[0])
+	}
+	return nil
+}
+
+// clock is the moment to judge at.
+func (o *options) clock(now func() time.Time) (unit.Instant, error) {
+	if o.now == "" {
+		return unit.At(now().Truncate(time.Second)), nil
+	}
+	at, err := unit.ParseInstant(o.now)
+	if err != nil {
+		return 0, fmt.Errorf("-now: %w", err)
+	}
+	return at, nil
+}

@@ -1,0 +1,122 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"strings"
+
+	"budgetcheck/budget"
+	"budgetcheck/budget/footprint"
+	"budgetcheck/report"
+)
+
+// gate judges head runs and writes the statement.
+func gate(args []string, s streams) (int, error) {
+	var o options
+	err := o.parse("gate", args, s, "policy", "head", "base", "grid", "branch", "pull", "commit", "base-commit", "now", "out", "json")
+	if err != nil {
+		return 0, err
+	}
+	if err := o.noRest(); err != nil {
+		return 0, err
+	}
+	if o.branch == "" {
+		return 0, errors.New("-branch is missing: budgets belong to branches; with -pull it is the target branch")
+	}
+	statement, err := o.judge(s)
+	if err != nil {
+		return 0, err
+	}
+	if err := o.write(s.out, statement); err != nil {
+		return 0, err
+	}
+	if statement.Gate == budget.Closed {
+		return exitFinding, nil
+	}
+	return exitDone, nil
+}
+
+func (o *options) judge(s streams) (*budget.Statement, error) {
+	now, err := o.clock(s.clock)
+	if err != nil {
+		return nil, err
+	}
+	policy, err := o.mustPolicy()
+	if err != nil {
+		return nil, err
+	}
+	l := &loader{policy: policy}
+	if err := l.readSeries(o); err != nil {
+		return nil, err
+	}
+	head := l.weighAll(o.head, "-head", nil)
+	unread := l.unread
+	base := l.weighAll(o.base, "-base", nil)
+	for _, f := range l.unread[len(unread):] {
+		l.notes = append(l.notes, f.String())
+	}
+	tellFindings(s.err, l, head, base)
+	return policy.Judge(budget.Case{
+		Branch: o.branch, Pull: o.pull, HeadCommit: o.commit, BaseCommit: o.baseCommit, Now: now,
+		PolicySource: strings.Join(policy.Files, " and "),
+		Head:         head, Base: base, Unread: unread, Notes: l.notes,
+	}), nil
+}
+
+// tellFindings lists what is wrong in series and records, file by file.
+func tellFindings(w io.Writer, l *loader, sides ...[]*footprint.Part) (any bool) {
+	tell := func(lines []string) {
+		for _, line := range lines {
+			any = true
+			fmt.Fprintln(w, report.Inert(line))
+		}
+	}
+	for _, f := range l.series {
+		tell(f.Findings.Lines())
+	}
+	for _, f := range l.unread {
+		tell([]string{f.String()})
+	}
+	for _, parts := range sides {
+		for _, p := range parts {
+			tell(p.Findings.Lines())
+		}
+	}
+	return any
+}
+
+// write prints the statement and, with -out, writes it in every form.
+func (o *options) write(w io.Writer, s *budget.Statement) error {
+	if o.out != "" {
+		if err := writeForms(o.out, s); err != nil {
+			return fmt.Errorf("the statement cannot be written: %w", err)
+		}
+	}
+	if o.json {
+		return report.JSON(w, s)
+	}
+	return report.Text(w, s)
+}
+
+func writeForms(dir string, s *budget.Statement) error {
+	if err := os.MkdirAll(dir, 0o777); err != nil {
+		return err
+	}
+	forms := []struct {
+		name string
+		form func(io.Writer, *budget.Statement) error
+	}{{"statement.md", report.Markdown}, {"statement.json", report.JSON}, {"statement.xml", report.JUnit}}
+	for _, f := range forms {
+		var text strings.Builder
+		if err := f.form(&text, s); err != nil {
+			return err
+		}
+		if err := os.WriteFile(filepath.Join(dir, f.name), []byte(text.String()), 0o666); err != nil {
+			return err
+		}
+	}
+	return nil
+}

@@ -1,0 +1,83 @@
+package main
+
+import (
+	"bytes"
+	"embed"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"text/template"
+
+	"budgetcheck/budget"
+)
+
+//go:embed starter
+var starter embed.FS
+
+// initialise writes a starter policy and workflow. With -head it fills in the
+// jobs, sites and machines of these records, and limits with some room.
+func initialise(args []string, s streams) (int, error) {
+	var o options
+	if err := o.parse("init", args, s, "head", "grid", "out"); err != nil {
+		return 0, err
+	}
+	if err := o.noRest(); err != nil {
+		return 0, err
+	}
+	l := &loader{policy: budget.Bare()}
+	if err := l.readSeries(&o); err != nil {
+		return 0, err
+	}
+	parts := l.weighAll(o.head, "-head", nil)
+	if wrong := tellFindings(s.err, l, parts); wrong || len(o.head) > 0 && len(parts) == 0 {
+		tellNotes(s.err, l.notes)
+		return 0, errors.New("nothing was written: mend or leave out what is named above")
+	}
+	runs, _ := l.policy.Runs(parts)
+	return exitDone, o.start(s.out, budget.NewStarter(runs, o.grid))
+}
+
+// start writes the files; it never overwrites one.
+func (o *options) start(w io.Writer, st budget.Starter) error {
+	files := []struct{ template, path string }{
+		{"starter/budgetcheck.toml", policyName},
+		{"starter/workflow.yml", filepath.Join(".github", "workflows", "budgetcheck.yml")},
+	}
+	for _, f := range files {
+		if _, err := os.Stat(filepath.Join(o.out, f.path)); err == nil {
+			return fmt.Errorf("%s is already there; nothing was written", filepath.Join(o.out, f.path))
+		}
+	}
+	for _, f := range files {
+		if err := writeStarter(f.template, filepath.Join(o.out, f.path), st); err != nil {
+			return err
+		}
+		fmt.Fprintf(w, "wrote %s\n", filepath.Join(o.out, f.path))
+	}
+	for _, line := range st.Unknown {
+		fmt.Fprintf(w, "not known: %s\n", line)
+	}
+	return nil
+}
+
+func writeStarter(name, path string, st budget.Starter) error {
+	t, err := template.ParseFS(starter, name)
+	if err != nil {
+		return err
+	}
+	var text bytes.Buffer
+	if err := t.Execute(&text, st); err != nil {
+		return err
+	}
+	if err := os.MkdirAll(filepath.Dir(path), 0o777); err != nil {
+		return err
+	}
+	f, err := os.OpenFile(path, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
+	if err != nil {
+		return err
+	}
+	_, err = f.Write(text.Bytes())
+	return errors.Join(err, f.Close())
+}

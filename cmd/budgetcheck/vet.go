@@ -1,0 +1,88 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"io"
+	"os"
+
+	"budgetcheck/budget"
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/record"
+	"budgetcheck/report"
+)
+
+// vet checks a policy, records and series by themselves, without a verdict.
+func vet(args []string, s streams) (int, error) {
+	var o options
+	if err := o.parse("vet", args, s, "policy", "head", "base", "grid"); err != nil {
+		return 0, err
+	}
+	records := append(append(o.head, o.base...), o.rest...)
+	policy, lines, err := o.vetPolicy(len(records)+len(o.grid) > 0)
+	if err != nil {
+		return 0, err
+	}
+	l := &loader{policy: policy}
+	if err := l.readSeries(&o); err != nil {
+		return 0, err
+	}
+	for _, f := range l.series {
+		lines = append(lines, f.Findings.Lines()...)
+	}
+	l.weighAll(records, "records", func(r *record.Reader, p *footprint.Part) {
+		lines = append(lines, r.Findings().Lines()...)
+		lines = append(lines, r.Unknown().Lines()...)
+		lines = append(lines, r.Notes()...)
+		for _, d := range p.Doubts {
+			lines = append(lines, d.Reason)
+		}
+	})
+	for _, f := range l.unread {
+		lines = append(lines, f.String())
+	}
+	lines = append(lines, l.notes...)
+	return tellVetted(s.out, lines, len(policy.Files), len(l.series), len(records))
+}
+
+// vetPolicy reads the policy for its findings. One that is not there is fine
+// as long as there is something else to look at.
+func (o *options) vetPolicy(otherwise bool) (*budget.Policy, []string, error) {
+	named := len(o.policy) > 0
+	if !named {
+		if _, err := os.Stat(policyName); errors.Is(err, os.ErrNotExist) && otherwise {
+			return budget.Bare(), nil, nil
+		}
+		o.policy = list{policyName}
+	}
+	p, found, err := readPolicies(o.policy)
+	if err != nil {
+		return nil, nil, err
+	}
+	var lines []string
+	for _, f := range found {
+		lines = append(lines, f.String())
+	}
+	if len(found) > 0 {
+		o.policy = nil // its series may not be what it means
+		return budget.Bare(), lines, nil
+	}
+	return p, nil, nil
+}
+
+func tellVetted(w io.Writer, lines []string, policies, series, records int) (int, error) {
+	for _, line := range lines {
+		fmt.Fprintln(w, report.Inert(line))
+	}
+	if len(lines) > 0 {
+		return exitFinding, nil
+	}
+	_, err := fmt.Fprintf(w, "nothing found in %d policy files, %d series files and the records of %d globs\n", policies, series, records)
+	return exitDone, err
+}
+
+func tellNotes(w io.Writer, notes []string) {
+	for _, n := range notes {
+		fmt.Fprintln(w, report.Inert(n))
+	}
+}

@@ -1,0 +1,81 @@
+package report
+
+import (
+	"encoding/xml"
+	"fmt"
+	"io"
+
+	"budgetcheck/budget"
+)
+
+// suites is the JUnit XML that CI systems read (common practice, no source).
+type suites struct {
+	XMLName xml.Name `xml:"testsuites"`
+	Suite   suite    `xml:"testsuite"`
+}
+
+type suite struct {
+	Name      string     `xml:"name,attr"`
+	Tests     int        `xml:"tests,attr"`
+	Failures  int        `xml:"failures,attr"`
+	Errors    int        `xml:"errors,attr"`
+	Skipped   int        `xml:"skipped,attr"`
+	Timestamp string     `xml:"timestamp,attr"`
+	Cases     []testCase `xml:"testcase"`
+}
+
+type testCase struct {
+	Class   string   `xml:"classname,attr"`
+	Name    string   `xml:"name,attr"`
+	Failure *message `xml:"failure"`
+	Error   *message `xml:"error"`
+	Skipped *message `xml:"skipped"`
+	Out     string   `xml:"system-out,omitempty"`
+}
+
+type message struct {
+	Message string `xml:"message,attr"`
+	Text    string `xml:",chardata"`
+}
+
+// JUnit writes one test case for each ruling: over is a failure, unproven an
+// error, or skipped where the policy only warns of it.
+func JUnit(w io.Writer, s *budget.Statement) error {
+	out := suites{Suite: suite{Name: "budgetcheck, branch " + Inert(s.Branch), Tests: len(s.Rulings), Timestamp: s.Now.Time().Format("2006-01-02T15:04:05")}}
+	for _, r := range s.Rulings {
+		out.Suite.add(r, s.Gate == budget.Open)
+	}
+	if _, err := io.WriteString(w, xml.Header); err != nil {
+		return err
+	}
+	e := xml.NewEncoder(w)
+	e.Indent("", "  ")
+	if err := e.Encode(out); err != nil {
+		return err
+	}
+	_, err := io.WriteString(w, "\n")
+	return err
+}
+
+func (s *suite) add(r budget.Ruling, warned bool) {
+	text := fmt.Sprintf("%s: observed %s, limit %s: %s", r.State, dash(r.ObservedText), dash(r.LimitText), reason(r))
+	m := &message{Inert(text), Inert(fmt.Sprintf("%s:%d: %s", r.PolicyFile, r.PolicyLine, text))}
+	c := testCase{Class: "budgetcheck." + string(r.Kind), Name: Inert(r.Name)}
+	if r.Job != "" {
+		c.Name = Inert(r.Name + ", job " + r.Job)
+	}
+	switch {
+	case r.State == budget.Over:
+		c.Failure = m
+		s.Failures++
+	case r.State == budget.Unproven && warned:
+		c.Skipped = m
+		s.Skipped++
+	case r.State == budget.Unproven:
+		c.Error = m
+		s.Errors++
+	default:
+		c.Out = Inert(text)
+	}
+	s.Cases = append(s.Cases, c)
+}
