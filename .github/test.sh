@@ -1,0 +1,50 @@
+#!/usr/bin/env bash
+# The tests, whole: formatting, vet, static analysis, all tests with the race
+# detector, and a short run of every fuzz target. On a Debian machine it
+# installs what is missing; elsewhere it says what that is.
+# usage: .github/test.sh [FUZZ SECONDS, default 3]
+set -euo pipefail
+cd "$(dirname "${BASH_SOURCE[0]}")/.."
+
+# Packages that go's ./... passes over, for they are below testdata.
+packages=(./... ./testdata/demo/gen)
+
+install() {
+  local missing=()
+  for tool in gcc git python3; do
+    command -v "$tool" >/dev/null || missing+=("$tool")
+  done
+  [ ${#missing[@]} -gt 0 ] || return 0
+  if ! command -v apt-get >/dev/null; then
+    echo "the tests need: ${missing[*]}; install them and run this again" >&2
+    exit 2
+  fi
+  local sudo=""
+  [ "$(id -u)" = 0 ] || sudo=sudo
+  $sudo apt-get update
+  $sudo apt-get install -y --no-install-recommends "${missing[@]}" libc6-dev ca-certificates
+}
+
+formatted() {
+  local bad
+  bad=$(gofmt -l cmd budget report testdata)
+  [ -z "$bad" ] || { printf 'not formatted, run gofmt -w on:\n%s\n' "$bad" >&2; exit 1; }
+}
+
+fuzz() {
+  local seconds=$1 package target
+  while read -r package; do
+    while read -r target; do
+      case $target in Fuzz*) go test -run '^$' -fuzz "^$target\$" -fuzztime "${seconds}s" "$package" ;; esac
+    done < <(go test -list '^Fuzz' "$package")
+  done < <(go list "${packages[@]}")
+}
+
+install
+go version
+formatted
+go mod verify
+go vet "${packages[@]}"
+go tool staticcheck "${packages[@]}"
+go test -race "${packages[@]}"
+fuzz "${1:-3}"

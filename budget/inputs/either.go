@@ -1,0 +1,42 @@
+package inputs
+
+import (
+	"context"
+	"errors"
+)
+
+// Either asks each repository in turn: a shallow clone first, then the API of
+// the code host. Only what the first does not have is asked of the next.
+type Either []Repository
+
+// Tree lists the files of a commit.
+func (e Either) Tree(ctx context.Context, commit string) (Tree, error) {
+	return first(e, func(r Repository) (Tree, error) { return r.Tree(ctx, commit) })
+}
+
+// Blob reads a file's content.
+func (e Either) Blob(ctx context.Context, f File) ([]byte, error) {
+	return first(e, func(r Repository) ([]byte, error) { return r.Blob(ctx, f) })
+}
+
+// MergeBase is the best common ancestor.
+func (e Either) MergeBase(ctx context.Context, a, b string) (string, error) {
+	return first(e, func(r Repository) (string, error) { return r.MergeBase(ctx, a, b) })
+}
+
+// Tip is the commit that a branch points to.
+func (e Either) Tip(ctx context.Context, branch string) (string, error) {
+	return first(e, func(r Repository) (string, error) { return r.Tip(ctx, branch) })
+}
+
+// first is the first answer; any failure sends the question on, and the last
+// failure is told.
+func first[T any](repos Either, ask func(Repository) (T, error)) (answer T, err error) {
+	err = errors.New("there is no repository to ask")
+	for _, r := range repos {
+		if answer, err = ask(r); err == nil {
+			return answer, nil
+		}
+	}
+	return answer, err
+}
