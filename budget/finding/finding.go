@@ -65,11 +65,14 @@ func (l *List) Lines() []string {
 		return cmp.Or(cmp.Compare(a.File, b.File), cmp.Compare(a.Line, b.Line))
 	})
 	var lines []string
-	for _, f := range slices.Compact(sorted) {
-		lines = append(lines, f.String())
+	for i, f := range sorted {
+		if !slices.Contains(sorted[:i], f) {
+			lines = append(lines, f.String())
+		}
 	}
 	if l.more > 0 {
-		lines = append(lines, fmt.Sprintf("%s: %d more like these", l.kept[0].File, l.more))
+		more := Finding{File: l.kept[0].File, What: fmt.Sprintf("%d more like these", l.more)}
+		lines = append(lines, more.String())
 	}
 	return lines
 }

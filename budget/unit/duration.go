@@ -22,9 +22,9 @@ const (
 
 var durations = scale{
 	what: "a duration", example: "72h",
-	prints: []step{{"ms", 1e-3}, {"s", 1}, {"min", 60}, {"h", 3600}, {"d", 86400}, {"y", 365 * 86400}},
-	accepts: []step{{"sec", 1}, {"m", 60}, {"w", 7 * 86400}, {"day", 86400}, {"days", 86400},
-		{"year", 365 * 86400}, {"years", 365 * 86400}},
+	prints: []step{{"ms", 1, 1e3}, {"s", 1, 1}, {"min", 60, 1}, {"h", 3600, 1}, {"d", 86400, 1}, {"y", 365 * 86400, 1}},
+	accepts: []step{{"sec", 1, 1}, {"m", 60, 1}, {"w", 7 * 86400, 1}, {"day", 86400, 1}, {"days", 86400, 1},
+		{"year", 365 * 86400, 1}, {"years", 365 * 86400, 1}},
 }
 
 // ParseDuration reads text like "2m", "1h30m", "72h", "4y". "m" is a minute.

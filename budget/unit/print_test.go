@@ -134,3 +134,12 @@ func TestSigned(t *testing.T) {
 	assert.Equal(t, "0 g", Signed(Mass(0)))
 	assert.Equal(t, "+8.00 %", Signed(Share(0.08)))
 }
+
+// TestPlusMinus: one prefix for both, that of the larger.
+func TestPlusMinus(t *testing.T) {
+	assert.Equal(t, "25.0 ± 2.5 kg", Mass(25_000).PlusMinus(2_500))
+	assert.Equal(t, "1.00 ± 0.10 kg", Mass(999.6).PlusMinus(100))
+	assert.Equal(t, "0 ± 120 g", Mass(0).PlusMinus(120))
+	assert.Equal(t, "-1.20 ± 0.20 kg", Mass(-1200).PlusMinus(200))
+	assert.Equal(t, "350 ± 20 Wh", Energy(0.35).PlusMinus(0.02))
+}

@@ -34,29 +34,29 @@ const (
 var (
 	masses = scale{
 		what: "a mass of CO2e", example: "25 kg",
-		prints:  []step{{"µg", 1e-6}, {"mg", 1e-3}, {"g", 1}, {"kg", 1e3}, {"t", 1e6}, {"kt", 1e9}, {"Mt", 1e12}},
-		accepts: []step{{"ug", 1e-6}, {"lb", pound}, {"short ton", shortTon}, {"short tons", shortTon}},
+		prints:  []step{{"µg", 1, 1e6}, {"mg", 1, 1e3}, {"g", 1, 1}, {"kg", 1e3, 1}, {"t", 1e6, 1}, {"kt", 1e9, 1}, {"Mt", 1e12, 1}},
+		accepts: []step{{"ug", 1, 1e6}, {"lb", pound, 1}, {"short ton", shortTon, 1}, {"short tons", shortTon, 1}},
 	}
 	energies = scale{
 		what: "an energy", example: "350 Wh",
-		prints:  []step{{"µWh", 1e-9}, {"mWh", 1e-6}, {"Wh", 1e-3}, {"kWh", 1}, {"MWh", 1e3}, {"GWh", 1e6}, {"TWh", 1e9}},
-		accepts: []step{{"uWh", 1e-9}, {"J", 1 / JoulesPerKWh}, {"kJ", 1e3 / JoulesPerKWh}, {"MJ", 1e6 / JoulesPerKWh}, {"GJ", 1e9 / JoulesPerKWh}},
+		prints:  []step{{"µWh", 1, 1e9}, {"mWh", 1, 1e6}, {"Wh", 1, 1e3}, {"kWh", 1, 1}, {"MWh", 1e3, 1}, {"GWh", 1e6, 1}, {"TWh", 1e9, 1}},
+		accepts: []step{{"uWh", 1, 1e9}, {"J", 1, JoulesPerKWh}, {"kJ", 1e3, JoulesPerKWh}, {"MJ", 1e6, JoulesPerKWh}, {"GJ", 1e9, JoulesPerKWh}},
 	}
 	powers = scale{
 		what: "a power", example: "2.8 kW",
-		prints:  []step{{"µW", 1e-6}, {"mW", 1e-3}, {"W", 1}, {"kW", 1e3}, {"MW", 1e6}, {"GW", 1e9}},
-		accepts: []step{{"uW", 1e-6}},
+		prints:  []step{{"µW", 1, 1e6}, {"mW", 1, 1e3}, {"W", 1, 1}, {"kW", 1e3, 1}, {"MW", 1e6, 1}, {"GW", 1e9, 1}},
+		accepts: []step{{"uW", 1, 1e6}},
 	}
 	intensities = scale{
 		what: "a carbon intensity", example: "412 g/kWh",
-		prints: []step{{"g/kWh", 1}},
-		accepts: []step{{"mg/kWh", 1e-3}, {"kg/kWh", 1e3}, {"kg/MWh", 1}, {"g/MWh", 1e-3}, {"t/MWh", 1e3},
-			{"t/GWh", 1}, {"mg/Wh", 1}, {"lb/MWh", pound / 1e3}, {"lb/kWh", pound}},
+		prints: []step{{"g/kWh", 1, 1}},
+		accepts: []step{{"mg/kWh", 1, 1e3}, {"kg/kWh", 1e3, 1}, {"kg/MWh", 1, 1}, {"g/MWh", 1, 1e3}, {"t/MWh", 1e3, 1},
+			{"t/GWh", 1, 1}, {"mg/Wh", 1, 1}, {"lb/MWh", pound, 1e3}, {"lb/kWh", pound, 1}},
 	}
 	shares = scale{
 		what: "a share", example: "5 %",
-		prints:  []step{{"%", 0.01}},
-		accepts: []step{{"", 1}},
+		prints:  []step{{"%", 1, 100}},
+		accepts: []step{{"", 1, 1}},
 	}
 )
 

@@ -18,8 +18,8 @@ type Work struct {
 // ParseWork reads text like "100000 step".
 func ParseWork(text string) (Work, error) {
 	number, word, err := split(text)
-	amount, tooLarge := times(number, 1)
-	if err != nil || tooLarge != nil || amount == 0 || !oneWord(word) {
+	amount, notFinite := strconv.ParseFloat(number, 64)
+	if err != nil || notFinite != nil || amount == 0 || !oneWord(word) {
 		return Work{}, fmt.Errorf("%q is not an amount of work; write a number above zero and one word, like %q",
 			clip(text), "100000 step")
 	}

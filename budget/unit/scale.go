@@ -10,11 +10,15 @@ import (
 	"strings"
 )
 
-// step is one unit of a quantity and its size in the base unit.
+// step is one unit of a quantity: size/per of the base unit. Two numbers, for
+// a thousandth or a joule is no exact float, and both of these are exact decimals.
 type step struct {
-	symbol string
-	size   float64
+	symbol    string
+	size, per float64
 }
+
+// of is value, in base units, in this unit.
+func (st step) of(value float64) float64 { return value / st.size * st.per }
 
 // scale is how one quantity is written: the prefixes it prints with, smallest
 // first, and further units it accepts.
@@ -32,12 +36,12 @@ func (s *scale) parse(text string) (float64, error) {
 	if err != nil {
 		return 0, fmt.Errorf("%q is not %s: %w; write it like %q", clip(text), s.what, err, s.example)
 	}
-	size, ok := s.size(symbol)
+	unit, ok := s.find(symbol)
 	if !ok {
 		return 0, fmt.Errorf("%q is not %s: %s; use one of %s, like %q",
 			clip(text), s.what, unknown(symbol), s.symbols(), s.example)
 	}
-	value, err := times(number, size)
+	value, err := unit.times(number)
 	if err != nil {
 		return 0, fmt.Errorf("%q is not %s: %w; write it like %q", clip(text), s.what, err, s.example)
 	}
@@ -52,14 +56,14 @@ func unknown(symbol string) string {
 	return fmt.Sprintf("unknown unit %q", clip(symbol))
 }
 
-func (s *scale) size(symbol string) (float64, bool) {
+func (s *scale) find(symbol string) (step, bool) {
 	for _, list := range [][]step{s.prints, s.accepts} {
 		i := slices.IndexFunc(list, func(st step) bool { return st.symbol == symbol })
 		if i >= 0 {
-			return list[i].size, true
+			return list[i], true
 		}
 	}
-	return 0, false
+	return step{}, false
 }
 
 func (s *scale) symbols() string {
@@ -79,13 +83,12 @@ func (s *scale) text(value float64, digits int) string {
 	}
 	best := s.prints[0]
 	for _, st := range s.prints[1:] {
-		// The factor absorbs the representation error of sizes below one.
-		if math.Abs(round(value/best.size, digits))*best.size < st.size*(1-1e-15) {
+		if math.Abs(round(best.of(value), digits))*best.size*st.per < st.size*best.per {
 			break
 		}
-		best, value = st, math.Copysign(max(math.Abs(value), st.size), value)
+		best, value = st, math.Copysign(max(math.Abs(value), st.size/st.per), value)
 	}
-	return figures(value/best.size, digits) + " " + best.symbol
+	return figures(best.of(value), digits) + " " + best.symbol
 }
 
 // interval prints value ± expanded in one prefix, that of the larger, and with
@@ -94,17 +97,17 @@ func (s *scale) interval(value, expanded float64) string {
 	larger := max(math.Abs(value), math.Abs(expanded))
 	text := s.text(larger, 3)
 	number, symbol, _ := strings.Cut(text, " ")
-	size, _ := s.size(symbol)
+	unit, _ := s.find(symbol)
 	decimals := 0
 	if _, after, found := strings.Cut(number, "."); found {
 		decimals = len(after)
 	}
-	return strconv.FormatFloat(value/size, 'f', decimals, 64) + " ± " + strconv.FormatFloat(expanded/size, 'f', decimals, 64) + " " + symbol
+	return strconv.FormatFloat(unit.of(value), 'f', decimals, 64) + " ± " + strconv.FormatFloat(unit.of(expanded), 'f', decimals, 64) + " " + symbol
 }
 
 // base is the symbol of the base unit, which every scale with prefixes prints.
 func (s *scale) base() string {
-	i := slices.IndexFunc(s.prints, func(st step) bool { return st.size == 1 })
+	i := slices.IndexFunc(s.prints, func(st step) bool { return st.size == st.per })
 	return s.prints[i].symbol
 }
 
@@ -124,9 +127,10 @@ func split(text string) (number, rest string, err error) {
 	return number, rest, nil
 }
 
-// times multiplies as decimals and rounds once, so that "1.005 kg" is 1005 g
-// and not the float below it: exactly at a limit is within it, in any prefix.
-func times(number string, size float64) (float64, error) {
+// times is number of this unit in base units, computed as decimals and rounded
+// once: "1.005 kg" is 1005 g and not the float below it, for exactly at a limit
+// is within it, whatever prefix the limit is written in.
+func (st step) times(number string) (float64, error) {
 	value, err := strconv.ParseFloat(number, 64)
 	if err != nil {
 		return 0, errors.New("the number is too large")
@@ -134,16 +138,23 @@ func times(number string, size float64) (float64, error) {
 	if value == 0 { // or too small for a float; as a fraction it could fill the memory
 		return 0, nil
 	}
-	a, okA := new(big.Rat).SetString(number)
-	b, okB := new(big.Rat).SetString(strconv.FormatFloat(size, 'g', -1, 64))
-	if !okA || !okB {
-		return 0, errors.New("the number cannot be read")
-	}
-	value, _ = a.Mul(a, b).Float64()
+	exact := decimal(number)
+	exact.Mul(exact, decimal(strconv.FormatFloat(st.size, 'g', -1, 64)))
+	exact.Quo(exact, decimal(strconv.FormatFloat(st.per, 'g', -1, 64)))
+	value, _ = exact.Float64()
 	if math.IsInf(value, 0) {
 		return 0, errors.New("the number is too large")
 	}
 	return value, nil
+}
+
+// decimal reads a number that ParseFloat took.
+func decimal(number string) *big.Rat {
+	r, ok := new(big.Rat).SetString(number)
+	if !ok {
+		panic("unit: not a decimal number: " + number)
+	}
+	return r
 }
 
 // numberEnd is the length of the unsigned decimal number that text starts
