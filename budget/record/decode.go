@@ -1,7 +1,6 @@
 package record
 
 import (
-	"encoding/json"
 	"fmt"
 
 	"budgetcheck/budget/finding"
@@ -47,9 +46,7 @@ func decode(raw []byte) (l Line, meter, word string, wrong *finding.Finding) {
 }
 
 func (o *object) open() *Open {
-	if o.need("format", "write \"format\":1") && string(o.fields["format"]) != "1" {
-		o.fail(fmt.Sprintf("\"format\" is %s", clip(o.fields["format"])), "this version reads format 1; write that, or use a newer budgetcheck")
-	}
+	o.format()
 	op := &Open{
 		Run: o.word("run"), Attempt: 1, Part: o.label("part"), Parts: 1, Host: o.text("host"),
 		Job: o.word("job"), Stage: o.text("stage"), At: o.instant("at"), Site: o.text("site"),
@@ -73,10 +70,18 @@ func (o *object) open() *Open {
 			o.fail(`"reserved" is 0`, "write the number of units reserved, or leave it out for all")
 		}
 	}
-	if o.has("labels") && json.Unmarshal(o.fields["labels"], &op.Labels) != nil {
-		o.fail(`"labels" is not an object of texts`, `write it like {"team":"tide"}`)
-	}
+	op.Labels = o.texts("labels")
 	return op
+}
+
+func (o *object) format() {
+	if !o.need("format", `write "format":1`) {
+		return
+	}
+	raw := o.raw("format")
+	if n, err := wholeNumber(raw); err != nil || n != 1 {
+		o.fail(`"format" is `+show(raw), "this version reads format 1, so write that or use a newer budgetcheck")
+	}
 }
 
 func (o *object) used() *Used {

@@ -1,7 +1,6 @@
 package record
 
 import (
-	"bytes"
 	"encoding/json"
 	"fmt"
 	"math"
@@ -15,57 +14,26 @@ import (
 // object is a line read by the general path: any legal JSON object. It keeps
 // the first thing that is wrong with it; getters after that return zero.
 type object struct {
-	fields map[string]json.RawMessage
-	wrong  *finding.Finding // What and Do only
+	members []member         // as they stand in the line, also several of one key
+	wrong   *finding.Finding // What and Do only
 }
 
-// parseObject reads one line. Keys are taken exactly as written, and a key
-// that stands twice is wrong: which of the two counts would be a guess.
+// parseObject reads one line. Keys are taken exactly as written. What it gives
+// is valid as long as line is.
 func parseObject(line []byte) *object {
-	o := &object{fields: map[string]json.RawMessage{}}
-	if !utf8.Valid(line) {
+	o := &object{}
+	switch {
+	case !utf8.Valid(line):
 		return o.fail("the line is not valid UTF-8", "write records in UTF-8")
+	case !json.Valid(line):
+		err := json.Unmarshal(line, new(json.RawMessage))
+		return o.fail(fmt.Sprintf("the line is not valid JSON (%v)", err), "write one whole JSON object a line")
 	}
-	dec := json.NewDecoder(bytes.NewReader(line))
-	if start, err := dec.Token(); err != nil || start != json.Delim('{') {
+	if line = trim(line); line[0] != '{' {
 		return o.fail("the line is not a JSON object", "write one object a line, like {\"k\":\"power\",...}")
 	}
-	for dec.More() {
-		if !o.member(dec) {
-			return o
-		}
-	}
-	if _, err := dec.Token(); err != nil {
-		return o.broken(err)
-	}
-	if rest := bytes.TrimSpace(line[dec.InputOffset():]); len(rest) > 0 {
-		return o.fail("something follows the JSON object", "write one object a line")
-	}
+	o.members = split(line)
 	return o
-}
-
-func (o *object) member(dec *json.Decoder) bool {
-	token, err := dec.Token()
-	if err != nil {
-		o.broken(err)
-		return false
-	}
-	key := token.(string) // a member starts with a string, or Token fails
-	var raw json.RawMessage
-	if err := dec.Decode(&raw); err != nil {
-		o.broken(err)
-		return false
-	}
-	if _, twice := o.fields[key]; twice {
-		o.fail(fmt.Sprintf("the key %s stands twice", quote(key)), "write each key once")
-		return false
-	}
-	o.fields[key] = raw
-	return true
-}
-
-func (o *object) broken(err error) *object {
-	return o.fail(fmt.Sprintf("the line is not valid JSON (%v)", err), "write one whole JSON object a line")
 }
 
 // fail keeps the first problem of the line.
@@ -76,11 +44,25 @@ func (o *object) fail(what, do string) *object {
 	return o
 }
 
-// has tells whether the key is there; "absent" and null are the same.
-func (o *object) has(key string) bool {
-	raw, ok := o.fields[key]
-	return ok && string(raw) != "null"
+// raw is the value of the key, nil where it is absent or null. A key that
+// counts and stands twice is wrong: which of the two counts would be a guess.
+func (o *object) raw(key string) (raw []byte) {
+	for _, m := range o.members {
+		if m.key == key && raw != nil {
+			o.fail(fmt.Sprintf("the key %s stands twice", quote(key)), "write each key once")
+			return nil
+		}
+		if m.key == key {
+			raw = m.raw
+		}
+	}
+	if string(raw) == "null" {
+		return nil
+	}
+	return raw
 }
+
+func (o *object) has(key string) bool { return o.raw(key) != nil }
 
 // need complains where the key is missing.
 func (o *object) need(key, do string) bool {
@@ -92,12 +74,13 @@ func (o *object) need(key, do string) bool {
 }
 
 func (o *object) text(key string) string {
-	if !o.has(key) {
+	raw := o.raw(key)
+	if raw == nil {
 		return ""
 	}
-	var s string
-	if json.Unmarshal(o.fields[key], &s) != nil {
-		o.fail(fmt.Sprintf("%q is %s, not text", key, clip(o.fields[key])), "write it in quotation marks")
+	s, ok := unquote(raw)
+	if !ok {
+		o.fail(fmt.Sprintf("%q is %s, not text", key, show(raw)), "write it in quotation marks")
 	}
 	return s
 }
@@ -117,7 +100,7 @@ func (o *object) word(key string) string {
 
 // label is a number or a text, told as text.
 func (o *object) label(key string) string {
-	if o.has(key) && isDigit(o.fields[key][0]) {
+	if raw := o.raw(key); raw != nil && isDigit(raw[0]) {
 		return strconv.Itoa(o.whole(key, 0))
 	}
 	return o.text(key)
@@ -130,7 +113,7 @@ func (o *object) instant(key string) unit.Instant {
 	text := o.text(key)
 	at, err := unit.ParseInstant(text)
 	if err != nil {
-		o.fail(fmt.Sprintf("%q: %v", key, err), "")
+		o.fail(fmt.Sprintf("%q is %s, which is no time between 1678 and 2262", key, quote(text)), `write date, time and offset, like "2031-03-04T02:15:00Z"`)
 	}
 	return at
 }
@@ -140,28 +123,60 @@ func (o *object) number(key, what string) float64 {
 	if !o.need(key, "write "+what) {
 		return 0
 	}
-	raw := o.fields[key]
+	raw := o.raw(key)
 	v, err := strconv.ParseFloat(string(raw), 64)
 	switch {
 	case err != nil && math.IsInf(v, 0):
-		o.fail(fmt.Sprintf("%q is %s, which is beyond any finite number", key, clip(raw)), "write "+what)
-	case err != nil || !startsNumber(raw[0]):
-		o.fail(fmt.Sprintf("%q is %s, not a number", key, clip(raw)), "write "+what)
+		o.fail(fmt.Sprintf("%q is %s, which is beyond any finite number", key, show(raw)), "write "+what)
+	case err != nil:
+		o.fail(fmt.Sprintf("%q is %s, not a number", key, show(raw)), "write "+what)
 	case v < 0:
-		o.fail(fmt.Sprintf("%q is %s, below zero", key, clip(raw)), "write "+what+", at least 0; drop readings that the meter marks as bad")
+		o.fail(fmt.Sprintf("%q is %s, below zero", key, show(raw)), "write "+what+", at least 0, and drop readings that the meter marks as bad")
 	}
 	return math.Abs(v) // -0 is 0
 }
 
-func startsNumber(c byte) bool { return c == '-' || isDigit(c) }
-
 // whole is a whole number from least up.
 func (o *object) whole(key string, least int) int {
-	n, err := strconv.Atoi(string(o.fields[key]))
+	raw := o.raw(key)
+	n, err := wholeNumber(raw)
 	if err != nil || n < least {
-		o.fail(fmt.Sprintf("%q is %s", key, clip(o.fields[key])), fmt.Sprintf("write a whole number from %d up", least))
+		o.fail(fmt.Sprintf("%q is %s", key, show(raw)), fmt.Sprintf("write a whole number from %d up", least))
 	}
 	return n
+}
+
+// wholeNumber reads 2, and 2.0 and 2e0 as some languages write it. Beyond 2^53
+// neighbours would be taken for one another.
+func wholeNumber(raw []byte) (int, error) {
+	v, err := strconv.ParseFloat(string(raw), 64)
+	if err != nil || v != math.Trunc(v) || math.Abs(v) >= 1<<53 {
+		return 0, strconv.ErrRange
+	}
+	return int(v), nil
+}
+
+// texts is an object of texts, nil where it is absent or empty.
+func (o *object) texts(key string) map[string]string {
+	raw := o.raw(key)
+	if raw == nil {
+		return nil
+	}
+	inner := parseObject(raw)
+	good := inner.wrong == nil
+	texts := map[string]string{}
+	for _, m := range inner.members {
+		s, ok := unquote(m.raw)
+		_, twice := texts[m.key]
+		texts[m.key], good = s, good && ok && !twice
+	}
+	if !good {
+		o.fail(fmt.Sprintf("%q is not an object of texts with each key once", key), `write it like {"team":"tide"}`)
+	}
+	if len(texts) == 0 {
+		return nil
+	}
+	return texts
 }
 
 // choice is one of the words, or the first where the key is absent.
@@ -177,15 +192,4 @@ func choice[T ~string](o *object, key string, words ...T) T {
 	}
 	o.fail(fmt.Sprintf("%q is %s", key, quote(string(got))), fmt.Sprintf("write one of %v", words))
 	return got
-}
-
-// quote shows text from a record in a message: escaped, and cut when long.
-func quote(s string) string { return strconv.QuoteToASCII(string(clip([]byte(s)))) }
-
-func clip(raw []byte) []byte {
-	const most = 60
-	if len(raw) > most {
-		return append(bytes.ToValidUTF8(bytes.Clone(raw[:most]), nil), "..."...)
-	}
-	return raw
 }

@@ -20,6 +20,7 @@ type Reader struct {
 	inflated io.Closer // nil for a plain record
 	no       int       // number of the line being read
 	scan     scanner
+	fields   fields // of the line being read, by the fast path
 	order    order
 	line     Line
 
@@ -35,7 +36,7 @@ type Reader struct {
 func NewReader(r io.Reader, name string) (*Reader, error) {
 	plain, closer, err := inflate(r)
 	if err != nil {
-		return nil, fmt.Errorf("%s: %w", name, err)
+		return nil, unreadable(name, err)
 	}
 	// One byte more than the longest line, for its newline.
 	rd := &Reader{name: name, in: bufio.NewReaderSize(plain, MaxLine+1), inflated: closer}
@@ -43,12 +44,13 @@ func NewReader(r io.Reader, name string) (*Reader, error) {
 	return rd, nil
 }
 
-// Close releases what decompression holds. It does not close the input.
+// Close releases what decompression holds. It does not close the input, and it
+// never fails: what is wrong with the stream, Next has said.
 func (r *Reader) Close() error {
-	if r.inflated == nil {
-		return nil
+	if r.inflated != nil {
+		_ = r.inflated.Close()
 	}
-	return r.inflated.Close()
+	return nil
 }
 
 // Meters are the names of the meters met so far, by the index in Line.Meter.
@@ -141,12 +143,14 @@ func (r *Reader) end(err error) error {
 		r.cutShort = true
 		err = io.EOF
 	}
-	if !errors.Is(err, io.EOF) {
+	switch {
+	case !errors.Is(err, io.EOF) && r.inflated != nil:
+		return unreadable(r.name, err)
+	case !errors.Is(err, io.EOF):
 		return fmt.Errorf("%s: %w", r.name, err)
-	}
-	if r.order.open == nil && r.findings.Len() == 0 {
+	case r.order.open == nil && r.findings.Len() == 0:
 		r.no = 1
-		r.report(&finding.Finding{What: "the record is empty", Do: "a job that ran writes an open line first"})
+		r.report(&finding.Finding{What: "the record has no open line", Do: "a job that ran writes one first"})
 	}
 	return io.EOF
 }
@@ -156,8 +160,8 @@ func (r *Reader) read(raw []byte, whole bool) bool {
 	if r.no == 1 {
 		raw = bytes.TrimPrefix(raw, []byte("\xef\xbb\xbf")) // a byte order mark says nothing
 	}
-	if f, ok := r.scan.scan(raw); ok {
-		return r.sample(f)
+	if r.scan.scan(raw, &r.fields) {
+		return r.sample(&r.fields)
 	}
 	if len(bytes.TrimSpace(raw)) == 0 {
 		return false
@@ -168,6 +172,7 @@ func (r *Reader) read(raw []byte, whole bool) bool {
 	}
 	line, meter, word, wrong := decode(raw)
 	if wrong != nil {
+		r.order.refused = r.order.refused || line.Kind == KindOpen
 		return r.refuse(wrong)
 	}
 	if line.Kind == KindUnknown {
@@ -184,7 +189,7 @@ func (r *Reader) read(raw []byte, whole bool) bool {
 }
 
 // sample takes a line of the fast path.
-func (r *Reader) sample(f fields) bool {
+func (r *Reader) sample(f *fields) bool {
 	r.line = Line{No: r.no, Kind: f.kind, At: f.at}
 	r.line.setReading(f.value, f.wrap)
 	return r.settle(r.order.sample(&r.line, f.meter))

@@ -56,7 +56,7 @@ func (o Outcome) Evidence() bool { return o == OK || o == Stopped || o == Pilot 
 type Line struct {
 	No   int // in the file, from 1
 	Kind Kind
-	At   unit.Instant // of an open, power, energy, work or close line
+	At   unit.Instant // of a used line, its end
 
 	Meter  int         // of power and energy: index into Reader.Meters
 	Power  unit.Power  // of power: the reading
@@ -112,4 +112,5 @@ type Close struct {
 const (
 	MaxLine   = 1 << 20 // bytes in a line
 	MaxMeters = 4096    // meters in a record
+	MaxName   = 1024    // bytes in the name of a meter, for they are all kept
 )

@@ -1,7 +1,8 @@
 package record
 
 import (
-	"math"
+	"bytes"
+	"encoding/json"
 
 	"budgetcheck/budget/unit"
 )
@@ -12,7 +13,7 @@ type fields struct {
 	at            unit.Instant
 	meter         []byte
 	value, wrap   float64
-	seen          uint8
+	seen          uint8 // of the bits below
 	valueIsJoules bool
 }
 
@@ -27,27 +28,45 @@ const (
 // scanner reads power and energy lines, nearly all of a record, without
 // allocating. Whatever it is not sure of, it leaves to the general path.
 type scanner struct {
-	b   []byte
-	pos int
-	day dayCache
+	b      []byte
+	pos    int
+	day    dayCache
+	marks  []mark   // where the values of the line are that shapes leave open
+	shapes [2]shape // of the latest power line and of the latest energy line
 }
 
-// scan reads one line. ok is false for every line that is not a plain power or
-// energy line with the keys of its kind, each once; nothing is judged here.
-func (s *scanner) scan(line []byte) (f fields, ok bool) {
-	s.b, s.pos = line, 0
+// scan reads one line into f. ok is false for every line that is not a plain
+// power or energy line with the keys of its kind, each once, and with plain
+// values of those that are ignored; nothing is judged here.
+func (s *scanner) scan(line []byte, f *fields) (ok bool) {
+	const longest = 4096 // bytes of a line whose shape is worth keeping
+	for i := range s.shapes {
+		if s.again(&s.shapes[i], line, f) {
+			return true
+		}
+	}
+	if ok = s.keys(line, f); ok && len(line) <= longest {
+		s.shapes[f.kind-KindPower].learn(line, s.marks, f)
+	}
+	return ok
+}
+
+// keys reads a line key by key, in any order.
+func (s *scanner) keys(line []byte, f *fields) bool {
+	*f = fields{}
+	s.b, s.pos, s.marks = line, 0, s.marks[:0]
 	if !s.next('{') {
-		return f, false
+		return false
 	}
 	for {
 		key, ok := s.text()
-		if !ok || !s.next(':') || !s.field(&f, key) {
-			return f, false
+		if !ok || !s.next(':') || !s.field(f, key) {
+			return false
 		}
 		if s.next(',') {
 			continue
 		}
-		return f, s.next('}') && s.atEnd() && f.complete()
+		return s.next('}') && s.atEnd() && f.complete()
 	}
 }
 
@@ -80,24 +99,44 @@ func (s *scanner) field(f *fields, key []byte) (ok bool) {
 		bit = seenAt
 		var text []byte
 		if text, ok = s.text(); ok {
+			s.mark(bit, s.pos-1-len(text), s.pos-1)
 			f.at, ok = s.day.parse(text)
 		}
 	case "meter":
 		bit = seenMeter
 		f.meter, ok = s.text()
+		s.mark(bit, s.pos-1-len(f.meter), s.pos-1)
 	case "w", "j":
 		bit = seenValue
 		f.valueIsJoules = key[0] == 'j'
+		s.space()
+		start := s.pos
 		f.value, ok = s.number()
+		s.mark(bit, start, s.pos)
 	case "wrap_j":
 		bit = seenWrap
 		f.wrap, ok = s.number()
+	default:
+		return s.skip()
 	}
 	if f.seen&bit != 0 {
 		return false // twice: the general path says so
 	}
 	f.seen |= bit
 	return ok
+}
+
+// skip passes over the value of a key that is ignored, if it is a plain one.
+func (s *scanner) skip() bool {
+	s.space()
+	rest := s.b[s.pos:]
+	n := bytes.IndexAny(rest, ",} \t\r\n")
+	if n <= 0 || rest[0] == '"' {
+		_, ok := s.text()
+		return ok
+	}
+	s.pos += n
+	return rest[0] != '{' && rest[0] != '[' && json.Valid(rest[:n])
 }
 
 func plainKind(word []byte) Kind {
@@ -126,8 +165,6 @@ func (s *scanner) space() {
 	}
 }
 
-func isSpace(c byte) bool { return c == ' ' || c == '\t' || c == '\r' || c == '\n' }
-
 func (s *scanner) atEnd() bool {
 	s.space()
 	return s.pos == len(s.b)
@@ -138,57 +175,14 @@ func (s *scanner) text() ([]byte, bool) {
 	if !s.next('"') {
 		return nil, false
 	}
-	b, start := s.b, s.pos
-	for i := start; i < len(b); i++ {
-		switch c := b[i]; {
-		case c == '"':
-			s.pos = i + 1
-			return b[start:i], true
-		case c == '\\' || c < 0x20 || c >= 0x7f:
-			return nil, false
-		}
-	}
-	return nil, false
+	text, ok := plainText(s.b[s.pos:])
+	s.pos += len(text) + 1
+	return text, ok
 }
 
-// number takes a JSON number that converts exactly: at most 15 significant
-// digits scaled by a power of ten that a float64 holds exactly, so that one
-// division rounds correctly (Clinger 1990, PLDI, from memory). Other numbers
-// are left to the general path.
 func (s *scanner) number() (float64, bool) {
 	s.space()
-	b, i := s.b, s.pos
-	start := i
-	var mantissa uint64
-	for ; i < len(b) && isDigit(b[i]); i++ {
-		mantissa = mantissa*10 + uint64(b[i]-'0')
-	}
-	whole := i - start
-	if whole == 0 || whole > 1 && b[start] == '0' {
-		return 0, false // signs and leading zeros
-	}
-	fraction := 0
-	if i < len(b) && b[i] == '.' {
-		for i++; i < len(b) && isDigit(b[i]); i++ {
-			mantissa = mantissa*10 + uint64(b[i]-'0')
-			fraction++
-		}
-		if fraction == 0 {
-			return 0, false
-		}
-	}
-	if whole+fraction > 15 || i < len(b) && (b[i] == 'e' || b[i] == 'E') {
-		return 0, false
-	}
-	s.pos = i
-	return float64(mantissa) / powersOfTen[fraction], true
+	v, n := plainNumber(s.b[s.pos:])
+	s.pos += n
+	return v, n > 0
 }
-
-var powersOfTen = func() (p [16]float64) {
-	for i := range p {
-		p[i] = math.Pow10(i)
-	}
-	return p
-}()
-
-func isDigit(c byte) bool { return c-'0' < 10 }

@@ -87,8 +87,12 @@ func (w *Writer) sample(kind string, at unit.Instant, meter, key string, value, 
 		return fmt.Errorf("meter %s: %w", name, err)
 	}
 	w.buf = fmt.Appendf(w.buf[:0], `{"k":%q,"at":%q,"meter":%s,%q:%s`, kind, at.String(), name, key, number)
-	if wrap > 0 {
-		w.buf = fmt.Appendf(w.buf, `,"wrap_j":%v`, wrap)
+	if wrap != 0 {
+		limit, err := json.Marshal(wrap)
+		if err != nil {
+			return fmt.Errorf("meter %s: wrap_j: %w", name, err)
+		}
+		w.buf = fmt.Appendf(w.buf, `,"wrap_j":%s`, limit)
 	}
 	return w.flush()
 }
