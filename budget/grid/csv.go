@@ -1,6 +1,7 @@
 package grid
 
 import (
+	"bufio"
 	"cmp"
 	"encoding/csv"
 	"errors"
@@ -29,6 +30,7 @@ type File struct {
 	Blank    int // rows whose intensity is empty: holes
 
 	steps  map[key][]step
+	zones  map[string]bool            // that some row names, holes and bad rows included
 	broken map[string]finding.Finding // by zone; "" stands for every zone of the file
 }
 
@@ -48,15 +50,15 @@ type step struct {
 // in any order and beside other columns. Rows that cannot count are findings,
 // and their zone is broken; an error is a failure to read.
 func ReadCSV(r io.Reader, name string, columns Columns) (*File, error) {
-	f := &File{Name: name, steps: map[key][]step{}, broken: map[string]finding.Finding{}}
-	rows := csv.NewReader(r)
+	f := &File{Name: name, steps: map[key][]step{}, zones: map[string]bool{}, broken: map[string]finding.Finding{}}
+	rows := csv.NewReader(withoutMark(r))
 	rows.ReuseRecord = true
 	rows.FieldsPerRecord = -1 // counted here, with a message of our own
 	header, err := rows.Read()
 	if err != nil && !isRowError(err) && !errors.Is(err, io.EOF) {
 		return nil, fmt.Errorf("%s: %w", name, err)
 	}
-	at, ok := f.header(header, columns)
+	lay, ok := f.header(header, columns)
 	for ok {
 		row, err := rows.Read()
 		if errors.Is(err, io.EOF) {
@@ -65,7 +67,7 @@ func ReadCSV(r io.Reader, name string, columns Columns) (*File, error) {
 		if err != nil && !isRowError(err) {
 			return nil, fmt.Errorf("%s: %w", name, err)
 		}
-		f.row(row, at, rows, err)
+		f.row(row, lay, rows, err)
 	}
 	f.order()
 	return f, nil
@@ -76,62 +78,79 @@ func isRowError(err error) bool {
 	return errors.As(err, &row)
 }
 
-// columnAt are the positions of the columns, in the order of Columns.
-type columnAt [5]int
-
-func (f *File) header(header []string, c Columns) (at columnAt, ok bool) {
-	if len(header) > 0 {
-		header[0] = strings.TrimPrefix(header[0], "\ufeff")
+// withoutMark drops a byte order mark, before the first quotation mark meets it.
+func withoutMark(r io.Reader) io.Reader {
+	const mark = "\ufeff"
+	in := bufio.NewReader(r)
+	if start, _ := in.Peek(len(mark)); string(start) == mark {
+		in.Discard(len(mark)) // cannot fail: they were just seen
 	}
+	return in
+}
+
+// layout is how the rows of a file are laid out.
+type layout struct {
+	at     [5]int // positions of the columns, in the order of Columns
+	fields int    // in every row
+}
+
+func (f *File) header(header []string, c Columns) (lay layout, ok bool) {
 	own := [...]string{"zone", "from", "to", "g_per_kwh", "factor"}
 	mapped := [...]string{c.Zone, c.From, c.To, c.GPerKWh, c.Factor}
+	lay.fields = len(header)
 	for n, name := range own {
 		if mapped[n] != "" {
 			name = mapped[n]
 		}
-		at[n] = slices.IndexFunc(header, func(h string) bool { return strings.TrimSpace(h) == name })
-		if at[n] < 0 {
+		same := func(h string) bool { return strings.TrimSpace(h) == name }
+		if lay.at[n] = slices.IndexFunc(header, same); lay.at[n] < 0 {
 			f.refuse("", 1, fmt.Sprintf("the header has no column %q", name),
 				"write the header zone,from,to,g_per_kwh,factor, or name your columns in [grid.columns] of the policy")
-			return at, false
+			return lay, false
+		}
+		if slices.ContainsFunc(header[lay.at[n]+1:], same) {
+			f.refuse("", 1, fmt.Sprintf("the header has two columns %q", name), "name the other one differently")
+			return lay, false
 		}
 	}
-	return at, true
+	return lay, true
 }
 
 // row takes one row. A row without an intensity is a hole.
-func (f *File) row(row []string, at columnAt, rows *csv.Reader, err error) {
+func (f *File) row(row []string, lay layout, rows *csv.Reader, err error) {
 	var bad *csv.ParseError
 	if errors.As(err, &bad) {
-		f.refuse("", bad.Line, fmt.Sprintf("the row cannot be read (%v)", bad.Err), "mend its quotation marks")
+		f.refuse("", bad.StartLine, fmt.Sprintf("the row cannot be read (%v)", bad.Err), "mend its quotation marks")
 		return
 	}
 	line, _ := rows.FieldPos(0)
-	if slices.Max(at[:]) >= len(row) {
-		f.refuse("", line, fmt.Sprintf("the row has %d fields, too few for its columns", len(row)), "write as many fields as the header has")
+	if len(row) != lay.fields {
+		f.refuse("", line, fmt.Sprintf("the row has %d fields, the header %d", len(row), lay.fields),
+			"write as many fields as the header has, and decimals with a point")
 		return
 	}
-	zone := strings.Clone(row[at[0]])
+	cell := func(n int) string { return strings.TrimSpace(row[lay.at[n]]) }
+	zone := cell(0)
 	if zone == "" || !utf8.ValidString(zone) {
 		f.refuse("", line, "the zone is empty or not valid UTF-8", "name the grid zone")
 		return
 	}
-	k := key{zone, Factor(row[at[4]])}
-	if k.factor != Average && k.factor != Marginal {
-		f.refuse(zone, line, fmt.Sprintf("the factor is %q", string(k.factor)), "write average or marginal")
+	f.zones[zone] = true
+	factor := Factor(cell(4))
+	if factor != Average && factor != Marginal {
+		f.refuse(zone, line, fmt.Sprintf("the factor is %q", string(factor)), "write average or marginal")
 		return
 	}
-	// The key must not hold on to the reader's buffer.
-	k.factor = map[Factor]Factor{Average: Average, Marginal: Marginal}[k.factor]
-	if row[at[3]] == "" {
+	if cell(3) == "" {
 		f.Blank++
 		return
 	}
-	in, err := interval(row[at[1]], row[at[2]], row[at[3]])
+	in, err := interval(cell(1), cell(2), cell(3))
 	if err != nil {
 		f.refuse(zone, line, err.Error(), "mend the row, or leave its intensity empty for a hole")
 		return
 	}
+	k := key{zone, factor}
 	f.steps[k] = append(f.steps[k], step{in, line})
 }
 
@@ -146,10 +165,11 @@ func interval(from, to, g string) (in Interval, err error) {
 		return in, fmt.Errorf("the interval ends at %s, not after its start %s", in.To, in.From)
 	}
 	v, err := strconv.ParseFloat(g, 64)
-	if err != nil || math.IsInf(v, 0) || math.IsNaN(v) || v < 0 {
-		return in, fmt.Errorf("the intensity %q is not a finite number of g/kWh from 0 up", g)
+	hex := strings.ContainsAny(g, "xX")
+	if err != nil || hex || math.IsInf(v, 0) || math.IsNaN(v) || v < 0 {
+		return in, fmt.Errorf("the intensity %q is not a finite decimal number of g/kWh from 0 up", g)
 	}
-	in.I = unit.Intensity(v)
+	in.I = unit.Intensity(math.Abs(v)) // -0 is 0
 	return in, nil
 }
 

@@ -41,7 +41,7 @@ func (s *Series) expectedUntil(t unit.Instant) unit.Instant {
 	until := endless
 	for k := 1; k <= lookBack; k++ {
 		back := unit.Duration(k) * unit.Day
-		if next := s.next(t.Add(-back)); next != endless {
+		if next := s.next(t.Add(-back)); next < endless.Add(-back) {
 			until = min(until, next.Add(back))
 		}
 	}

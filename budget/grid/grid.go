@@ -88,9 +88,13 @@ func (s *Series) next(t unit.Instant) unit.Instant {
 
 const endless = unit.Instant(1<<63 - 1)
 
-// overlay merges two lists of intervals; where they overlap, top wins.
-// differs is the first overlap in which they do not agree, nil if none.
+// overlay merges two lists of intervals, neither empty; where they overlap, top wins.
+// differs is the first overlap in which they do not agree, nil if none. The
+// result may share memory with under.
 func overlay(under, top []Interval) (merged []Interval, differs *Interval) {
+	if under[len(under)-1].To <= top[0].From { // files of days, in order
+		return append(under, top...), nil
+	}
 	for _, u := range under {
 		for len(top) > 0 && top[0].To <= u.From {
 			merged, top = append(merged, top[0]), top[1:]

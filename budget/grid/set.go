@@ -15,12 +15,14 @@ type Set struct {
 	files    []*File
 	series   map[key]*Series
 	notes    []string
+	noted    map[key]bool // series for which a note says that files differ
 }
 
 // NewSet lays the files over one another in the given order: the same row
-// twice is one row, and where rows differ the later file wins, which is noted.
+// twice is one row, and where rows differ the later file wins, which is noted
+// once for each series.
 func NewSet(boundary Boundary, files ...*File) *Set {
-	set := &Set{boundary: boundary, files: files, series: map[key]*Series{}}
+	set := &Set{boundary: boundary, files: files, series: map[key]*Series{}, noted: map[key]bool{}}
 	for _, f := range files {
 		for _, k := range sortedKeys(f.steps) {
 			set.add(f, k)
@@ -43,9 +45,10 @@ func (set *Set) add(f *File, k key) {
 		return
 	}
 	merged, differs := overlay(s.steps, steps)
-	if differs != nil {
-		set.notes = append(set.notes, fmt.Sprintf("%s differs from an earlier file for zone %s from %s on; the later file counts",
-			f.Name, k.zone, differs.From))
+	if differs != nil && !set.noted[k] {
+		set.noted[k] = true
+		set.notes = append(set.notes, fmt.Sprintf("%s differs from an earlier file for zone %s (%s) from %s on; where files differ, the later one counts",
+			f.Name, k.zone, k.factor, differs.From))
 	}
 	s.steps = merged
 }
@@ -58,15 +61,11 @@ func (set *Set) Broken(zone string) *finding.Finding {
 		if found, ok := f.broken[zone]; ok {
 			return &found
 		}
-		if found, ok := f.broken[""]; ok && (len(f.steps) == 0 || f.concerns(zone)) {
+		if found, ok := f.broken[""]; ok && (len(f.zones) == 0 || f.zones[zone]) {
 			return &found
 		}
 	}
 	return nil
-}
-
-func (f *File) concerns(zone string) bool {
-	return len(f.steps[key{zone, Average}])+len(f.steps[key{zone, Marginal}]) > 0
 }
 
 // Series is the series of a zone and factor, nil if there is none.
