@@ -92,4 +92,6 @@ type Doubt struct {
 	// Refutes: the measured energy itself is in question, so that it does not
 	// prove a limit passed.
 	Refutes bool
+	// Missing: a record that is still to come would settle the doubt.
+	Missing bool
 }

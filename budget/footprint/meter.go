@@ -18,6 +18,7 @@ type meter struct {
 	power   float64      // W at the last sample, or over the last covered interval
 	joules  unit.Joules  // the counter's last reading
 	read    unit.Instant // its time; later than at while the first edge is open
+	sure    bool         // the counter's last interval was covered: its power holds to the end
 
 	part    unit.Sum[unit.Joules] // measured in the current bucket
 	total   unit.Sum[unit.Joules]
@@ -25,16 +26,17 @@ type meter struct {
 	low     float64 // least and greatest covered power, W
 	high    float64
 	gaps    []gap
-	missing unit.Duration // sum of gaps
+
+	estimated bool // what is in part
 
 	above      int // readings above rated
 	firstAbove record.Line
 }
 
-// gap is the time in one bucket that a meter does not cover.
+// gap is a time that a meter does not cover.
 type gap struct {
-	bucket int
-	length unit.Duration
+	from, to unit.Instant
+	bucket   int // in which it starts
 }
 
 // sample takes a power reading: linear from the last one, if that is near.
@@ -65,8 +67,8 @@ func (m *meter) count(l *record.Line) {
 		return
 	}
 	length := l.At.Sub(m.read)
-	grown, ok := m.grown(l.Joules-m.joules, l.Wrap, length)
-	if ok {
+	var grown unit.Joules
+	if grown, m.sure = m.grown(l.Joules, l.Wrap, length); m.sure {
 		p := float64(grown) / length.Seconds()
 		m.plausible(p, l)
 		m.edge(p)
@@ -91,10 +93,10 @@ func (m *meter) edge(p float64) {
 	m.cover(m.read, p, p)
 }
 
-// grown is what the counter counted between two readings; ok is false where
+// grown is what the counter counted up to the reading j; ok is false where
 // that is not certain: it was reset, or may have wrapped more than once.
-func (m *meter) grown(change, wrap unit.Joules, length unit.Duration) (grown unit.Joules, ok bool) {
-	fell := change < 0
+func (m *meter) grown(j, wrap unit.Joules, length unit.Duration) (grown unit.Joules, ok bool) {
+	fell := j < m.joules
 	switch {
 	case fell && wrap == 0:
 		return 0, false
@@ -103,13 +105,17 @@ func (m *meter) grown(change, wrap unit.Joules, length unit.Duration) (grown uni
 	case fell && m.rated == 0 && length > m.maxGap:
 		return 0, false
 	case fell:
-		return change + wrap, true
+		return wrap - m.joules + j, true
 	}
-	return change, true
+	return j - m.joules, true
 }
 
 // used takes a total over a span, as constant power.
 func (m *meter) used(l *record.Line) {
+	if estimated := !l.Used.Measured; estimated != m.estimated {
+		m.flush()
+		m.estimated = estimated
+	}
 	p := float64(l.Used.Energy) * unit.JoulesPerKWh / l.Used.To.Sub(l.Used.From).Seconds()
 	m.plausible(p, l)
 	m.reach(l.Used.From, p)
@@ -117,7 +123,7 @@ func (m *meter) used(l *record.Line) {
 }
 
 func (m *meter) plausible(p float64, l *record.Line) {
-	if m.rated > 0 && p > m.rated {
+	if m.rated > 0 && p > m.rated*(1+rounding) {
 		if m.above == 0 {
 			m.firstAbove = *l
 			m.firstAbove.Power = unit.Power(p)
@@ -129,7 +135,7 @@ func (m *meter) plausible(p float64, l *record.Line) {
 // finish accounts for the edge from the last sample to the end of the part.
 func (m *meter) finish(end unit.Instant) {
 	m.started = true
-	if end.Sub(m.at) > m.maxGap || m.covered == 0 && m.kind == record.KindEnergy {
+	if end.Sub(m.at) > m.maxGap || m.kind == record.KindEnergy && !m.sure {
 		m.skip(end)
 	} else {
 		m.cover(end, m.power, m.power)
@@ -147,10 +153,10 @@ func (m *meter) cover(to unit.Instant, p0, p1 float64) {
 	m.extremes(p0, p1)
 	m.covered += to.Sub(start)
 	slope := (p1 - p0) / length
-	for p := p0; ; {
+	for p, rest := p0, length; ; rest = to.Sub(m.at).Seconds() {
 		b := m.line.at(m.bucket)
 		if to <= b.to {
-			m.part.Add(unit.Joules((p + p1) / 2 * to.Sub(m.at).Seconds()))
+			m.part.Add(unit.Joules((p + p1) / 2 * rest))
 			m.at = to
 			return
 		}
@@ -170,20 +176,30 @@ func (m *meter) extremes(p0, p1 float64) {
 	m.high = max(m.high, p0, p1)
 }
 
-// skip leaves a gap up to the moment to, remembered by bucket.
+// skip leaves a gap up to the moment to.
 func (m *meter) skip(to unit.Instant) {
-	for m.at < to {
-		b := m.line.at(m.bucket)
-		end := min(b.to, to)
-		m.gaps = append(m.gaps, gap{m.bucket, end.Sub(m.at)})
-		if n := len(m.gaps); n > 1 && m.gaps[n-2].bucket == m.bucket {
-			m.gaps[n-2].length += m.gaps[n-1].length
-			m.gaps = m.gaps[:n-1]
-		}
-		m.missing += end.Sub(m.at)
-		if m.at = end; end == b.to && end < to {
-			m.flush()
-			m.bucket++
+	if to <= m.at {
+		return
+	}
+	if n := len(m.gaps); n > 0 && m.gaps[n-1].to == m.at {
+		m.gaps[n-1].to = to
+	} else {
+		m.gaps = append(m.gaps, gap{m.at, to, m.bucket})
+	}
+	m.flush()
+	for m.line.at(m.bucket).to < to {
+		m.bucket++
+	}
+	m.at = to
+}
+
+// missing visits the buckets that the meter's gaps touch, with the time that it
+// does not cover there.
+func (m *meter) missing(visit func(b *bucket, length unit.Duration)) {
+	for _, g := range m.gaps {
+		for n := g.bucket; n < len(m.line.buckets) && m.line.buckets[n].from < g.to; n++ {
+			b := &m.line.buckets[n]
+			visit(b, b.overlap(g.from, g.to))
 		}
 	}
 }
@@ -193,8 +209,13 @@ func (m *meter) flush() {
 	j := m.part.Value()
 	m.part = unit.Sum[unit.Joules]{}
 	m.total.Add(j)
-	if m.bucket < len(m.line.buckets) {
-		m.line.buckets[m.bucket].measured.Add(j)
+	if m.bucket == len(m.line.buckets) {
+		return // nothing was measured yet
+	}
+	b := &m.line.buckets[m.bucket]
+	b.measured.Add(j)
+	if !m.estimated {
+		b.proven.Add(j)
 	}
 }
 
@@ -202,11 +223,12 @@ func (m *meter) flush() {
 // energy filled.
 func (m *meter) fill() (filled unit.Joules) {
 	var sum unit.Sum[unit.Joules]
-	for _, g := range m.gaps {
-		j := unit.Joules(m.mean() * g.length.Seconds())
-		m.line.buckets[g.bucket].filled.Add(j)
+	mean := m.mean()
+	m.missing(func(b *bucket, length unit.Duration) {
+		j := unit.Joules(mean * length.Seconds())
+		b.filled.Add(j)
 		sum.Add(j)
-	}
+	})
 	return sum.Value()
 }
 

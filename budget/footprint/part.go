@@ -44,10 +44,11 @@ type Part struct {
 	Findings *finding.List
 	Notes    []string
 	Doubts   []Doubt
-	Digest   string // hash of the energy lines
+	Digest   string // hash of the energy lines; empty if there are none
 
-	metered   unit.Energy // at the meters, filled gaps included
-	filled    unit.Energy // of metered
+	metered   unit.Energy // at the meters: measured and filled
+	measured  unit.Sum[unit.Energy]
+	filled    unit.Sum[unit.Energy]
 	unmetered unit.Energy // of machine, what a declared unmetered power adds
 	machine   unit.Energy
 	facility  unit.Energy
@@ -56,6 +57,7 @@ type Part struct {
 	proven    proven
 	hours     []Hour
 	embodied  unit.Mass
+	expected  float64 // standard uncertainty of the expected hours, g: one weather, so they add
 	random    random
 }
 
@@ -128,7 +130,7 @@ func (w *weighing) take(l *record.Line) {
 		w.open(l)
 		return
 	}
-	if l.At.Sub(p.Open.At) > MaxSpan || l.At < p.Open.At {
+	if p.beyond(l.At) {
 		if w.late == 0 {
 			w.late = l.No
 		}
@@ -137,19 +139,25 @@ func (w *weighing) take(l *record.Line) {
 	p.End = max(p.End, l.At)
 	switch l.Kind {
 	case record.KindPower:
-		w.hash.sample(l, float64(l.Power))
+		w.hash.line(l)
 		w.meter(l).sample(l)
 	case record.KindEnergy:
-		w.hash.sample(l, float64(l.Joules))
+		w.hash.line(l)
 		w.meter(l).count(l)
 	case record.KindUsed:
-		w.hash.sample(l, float64(l.Used.Energy))
+		w.hash.line(l)
 		w.used(l)
 	case record.KindWork:
 		p.Work = l.Work
 	case record.KindClose:
 		p.Outcome = l.Close.Outcome
 	}
+}
+
+// beyond tells whether a time is too far from the open line to be of the run.
+// The difference is taken without a sign: it may be longer than a Duration.
+func (p *Part) beyond(at unit.Instant) bool {
+	return at < p.Open.At || uint64(at-p.Open.At) > uint64(MaxSpan)
 }
 
 func (w *weighing) open(l *record.Line) {
@@ -221,9 +229,10 @@ func (w *weighing) close(name string, m *meter) {
 	}
 	p := w.part
 	m.finish(p.End)
-	filled := m.fill().Energy()
-	p.Meters = append(p.Meters, Meter{name, m.total.Value().Energy(), filled})
-	p.filled += filled
+	measured, filled := m.total.Value().Energy(), m.fill().Energy()
+	p.Meters = append(p.Meters, Meter{name, measured, filled})
+	p.measured.Add(measured)
+	p.filled.Add(filled)
 	switch {
 	case m.covered == 0:
 		p.doubt(Doubt{Reason: fmt.Sprintf("meter %s of %s has no covered time", name, p.File)})
@@ -241,4 +250,4 @@ func (w *weighing) close(name string, m *meter) {
 func (p *Part) doubt(d Doubt) { p.Doubts = append(p.Doubts, d) }
 
 // MeasuredEnergy is what the part's meters measured, without filled gaps.
-func (p *Part) MeasuredEnergy() unit.Energy { return p.metered - p.filled }
+func (p *Part) MeasuredEnergy() unit.Energy { return p.measured.Value() }

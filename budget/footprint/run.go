@@ -179,7 +179,7 @@ func (p *Part) show() RunPart {
 		Start: p.Open.At, End: p.End, Outcome: p.Outcome, Digest: p.Digest}
 	if len(p.Meters) > 0 {
 		show.Measured = &p.metered
-		show.Coverage = coverage(p.metered, p.filled)
+		show.Coverage = coverage(p.measured.Value(), p.filled.Value())
 	}
 	for _, m := range p.Meters {
 		show.Meters = append(show.Meters, m.Name)
@@ -188,11 +188,11 @@ func (p *Part) show() RunPart {
 }
 
 // coverage is nil where there is no energy to cover.
-func coverage(metered, filled unit.Energy) *unit.Share {
-	if metered <= 0 {
+func coverage(measured, filled unit.Energy) *unit.Share {
+	if measured+filled <= 0 {
 		return nil
 	}
-	c := unit.Share(float64(metered-filled) / float64(metered))
+	c := unit.Share(float64(measured) / float64(measured+filled))
 	return &c
 }
 
@@ -210,7 +210,7 @@ func (r *Run) outcome() {
 func (r *Run) whole() {
 	first := r.Pieces[0]
 	if have, want := len(r.Pieces), first.Open.Parts; have < want {
-		r.Doubt(Doubt{Reason: fmt.Sprintf("part missing: run %s has %d of %d parts", r.Run, have, want),
+		r.Doubt(Doubt{Missing: true, Reason: fmt.Sprintf("part missing: run %s has %d of %d parts", r.Run, have, want),
 			Observed: float64(have), Limit: float64(want), Unit: "parts"})
 	}
 	for _, p := range r.Pieces[1:] {
@@ -221,7 +221,8 @@ func (r *Run) whole() {
 	}
 }
 
-// progress sums the work: one shared count, or the sum over parts.
+// progress sums the work: one shared count, or the sum over parts. There is
+// none where the parts tell it differently.
 func (r *Run) progress() {
 	for _, p := range r.Pieces {
 		w := p.Work
@@ -231,7 +232,9 @@ func (r *Run) progress() {
 			sum := *w
 			r.Work = &sum
 		case w.Unit != r.Work.Unit || w.OfPart != r.Work.OfPart:
-			r.Doubt(Doubt{Reason: fmt.Sprintf("work is told in %s and in %s, or of run and of part", r.Work.Unit, w.Unit)})
+			r.Doubt(Doubt{Reason: fmt.Sprintf("work is told differently: in %q of %s and in %q of %s", r.Work.Unit, scope(r.Work), w.Unit, scope(w))})
+			r.Work = nil // neither counts for the other
+			return
 		case w.OfPart:
 			r.Work.Done += w.Done
 			r.Work.Planned += w.Planned
@@ -240,4 +243,17 @@ func (r *Run) progress() {
 			r.Work.Planned = max(r.Work.Planned, w.Planned)
 		}
 	}
+}
+
+// Commit is the commit that all parts of the run name; "" if they do not.
+func (r *Run) Commit() string {
+	return shared(r.Pieces, func(p *Part) string { return p.Open.Commit })
+}
+
+// scope tells whose work a work line counts.
+func scope(w *record.Work) string {
+	if w.OfPart {
+		return "the part"
+	}
+	return "the run"
 }

@@ -42,7 +42,6 @@ func (w *weighing) settle() {
 	p, c := w.part, w.part.chain()
 	p.reachEnd(&w.line)
 	var metered, unmetered, facility unit.Sum[unit.Energy]
-	var expected float64 // standard uncertainty of expected hours: one weather, so they add
 	var s sums
 	for n := range w.line.buckets {
 		b := &w.line.buckets[n]
@@ -53,14 +52,13 @@ func (w *weighing) settle() {
 		metered.Add(measured + filled)
 		unmetered.Add(constant)
 		facility.Add(fac)
-		s.add(b.price, fac, unit.Energy(float64(measured)/c.share*c.pue))
-		expected += float64(b.price.I.Of(fac)) * float64(b.price.U)
+		s.add(b.price, fac, unit.Energy(float64(b.proven.Value().Energy())/c.share*c.pue))
+		p.expected += float64(b.price.I.Of(fac)) * float64(b.price.U)
 		p.hour(b.from, fac)
 	}
 	p.metered, p.unmetered, p.facility = metered.Value(), unmetered.Value(), facility.Value()
 	p.machine = unit.Energy(float64(p.metered)/c.share) + p.unmetered
 	p.priced, p.proven = s.priced()
-	p.random.mass += expected * expected
 	p.settleFacts()
 }
 
@@ -107,7 +105,7 @@ func (w *weighing) plausible() {
 	if m == nil || len(p.Meters) == 0 {
 		return
 	}
-	if want := float64(m.Meters) * p.reservation(); !p.Averaged && float64(len(p.Meters)) < want {
+	if want := p.metersWanted(); !p.Averaged && float64(len(p.Meters)) < want {
 		p.doubt(Doubt{Reason: fmt.Sprintf("meter missing: %s has %d of the %v meters of machine %s", p.File, len(p.Meters), want, m.Name),
 			Observed: float64(len(p.Meters)), Limit: want, Unit: "meters"})
 	}
@@ -115,10 +113,20 @@ func (w *weighing) plausible() {
 		return
 	}
 	mean := unit.Power(float64(p.machine) * unit.JoulesPerKWh / p.span().Seconds() / p.reservation())
-	if mean < *m.Idle {
+	if float64(mean) < float64(*m.Idle)*(1-rounding) {
 		p.doubt(Doubt{Reason: fmt.Sprintf("%s: mean power of machine %s is %s, below its idle power of %s", p.File, m.Name, mean, *m.Idle),
 			Observed: float64(mean), Limit: float64(*m.Idle), Unit: "W"})
 	}
+}
+
+// metersWanted is how many meters the part must have. The product comes first:
+// it is a whole number, so that the quotient is one where it ought to be.
+func (p *Part) metersWanted() float64 {
+	m := p.Facts.Machine
+	if p.Open.Reserved == 0 {
+		return float64(m.Meters)
+	}
+	return float64(m.Meters) * p.Open.Reserved / m.Units
 }
 
 // gapVariance adds the variance of a meter's gaps: each is uncertain by the
@@ -128,12 +136,11 @@ func (w *weighing) gapVariance(m *meter) {
 	c := w.part.chain()
 	u := (m.high - m.low) / math.Sqrt(12) / c.share * c.pue
 	var energy, mass float64
-	for _, g := range m.gaps {
-		b := &w.line.buckets[g.bucket]
-		e := unit.Joules(u * g.length.Seconds()).Energy()
+	m.missing(func(b *bucket, length unit.Duration) {
+		e := unit.Joules(u * length.Seconds()).Energy()
 		energy += float64(e)
 		mass += float64(b.price.I.Of(e))
-	}
+	})
 	w.part.random.facility += energy * energy
 	w.part.random.mass += mass * mass
 }
@@ -147,17 +154,17 @@ type sums struct {
 	provenOperational unit.Sum[unit.Mass]
 }
 
-// add takes one bucket: all its facility energy, and what of it is measured.
-func (s *sums) add(price grid.Price, all, measured unit.Energy) {
+// add takes one bucket: all its facility energy, and what of it is proven.
+func (s *sums) add(price grid.Price, all, proven unit.Energy) {
 	s.energy[price.Source].Add(all)
-	s.provenEnergy.Add(measured)
+	s.provenEnergy.Add(proven)
 	if !price.Known {
 		s.unknown[price.Source] = s.unknown[price.Source] || all > 0
 		return
 	}
 	s.mass[price.Source].Add(price.I.Of(all))
 	if price.Source != grid.FromHole {
-		s.provenOperational.Add(price.I.Of(measured))
+		s.provenOperational.Add(price.I.Of(proven))
 	}
 }
 

@@ -1,7 +1,10 @@
 package footprint
 
 import (
+	"cmp"
+	"maps"
 	"math"
+	"slices"
 
 	"budgetcheck/budget/unit"
 )
@@ -37,6 +40,11 @@ func (d Declared) none() bool { return d == Declared{} }
 type Input struct {
 	Kind InputKind
 	Name string
+}
+
+// compare puts inputs in an order, so that sums over them round alike each time.
+func (in Input) compare(o Input) int {
+	return cmp.Or(cmp.Compare(in.Kind, o.Kind), cmp.Compare(in.Name, o.Name))
 }
 
 // Terms is how a figure depends on its inputs: for each, how much of the
@@ -76,9 +84,9 @@ func (t Terms) U(d Declared) (u float64, ok bool) {
 	}
 	variance := unit.Sum[float64]{}
 	variance.Add(t.Random)
-	for in, c := range t.By {
+	for _, in := range slices.SortedFunc(maps.Keys(t.By), Input.compare) {
 		if rel := d.of(in.Kind); rel != nil {
-			variance.Add(float64(*rel) * float64(*rel) * c * c)
+			variance.Add(float64(*rel) * float64(*rel) * t.By[in] * t.By[in])
 		}
 	}
 	return math.Sqrt(variance.Value()), true

@@ -1,6 +1,8 @@
 package footprint
 
 import (
+	"math"
+
 	"budgetcheck/budget/grid"
 	"budgetcheck/budget/unit"
 )
@@ -11,6 +13,7 @@ type bucket struct {
 	from, to unit.Instant
 	price    grid.Price
 	measured unit.Sum[unit.Joules] // over all meters
+	proven   unit.Sum[unit.Joules] // of measured, what is not estimated
 	filled   unit.Sum[unit.Joules]
 }
 
@@ -24,14 +27,22 @@ type timeline struct {
 // at is bucket n; every bucket before it must have been asked for.
 func (t *timeline) at(n int) *bucket {
 	if n == len(t.buckets) {
-		from := t.start
-		if n > 0 {
-			from = t.buckets[n-1].to
-		}
-		price := t.pricer.At(from)
-		t.buckets = append(t.buckets, bucket{from: from, to: min(price.Until, nextHour(from)), price: price})
+		t.grow()
 	}
 	return &t.buckets[n]
+}
+
+func (t *timeline) grow() {
+	from := t.start
+	if n := len(t.buckets); n > 0 {
+		from = t.buckets[n-1].to
+	}
+	price := t.pricer.At(from)
+	to := min(price.Until, nextHour(from))
+	if to <= from { // in the last hour of an Instant's range
+		to = math.MaxInt64
+	}
+	t.buckets = append(t.buckets, bucket{from: from, to: to, price: price})
 }
 
 func nextHour(t unit.Instant) unit.Instant {

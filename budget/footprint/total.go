@@ -3,6 +3,7 @@ package footprint
 import (
 	"cmp"
 	"fmt"
+	"maps"
 	"slices"
 
 	"budgetcheck/budget/grid"
@@ -11,14 +12,15 @@ import (
 
 // energies sums measured, machine and facility energy over the parts.
 func (r *Run) energies(m Method) {
-	var metered, filled, machine, facility unit.Sum[unit.Energy]
+	var metered, measured, filled, machine, facility unit.Sum[unit.Energy]
 	machines, sites, grade := true, true, Measured
 	for _, p := range r.Pieces {
 		if len(p.Meters) == 0 {
 			return // a doubt says so
 		}
 		metered.Add(p.metered)
-		filled.Add(p.filled)
+		measured.Add(p.measured.Value())
+		filled.Add(p.filled.Value())
 		machine.Add(p.machine)
 		facility.Add(p.facility)
 		machines = machines && p.Facts.Machine != nil
@@ -29,7 +31,7 @@ func (r *Run) energies(m Method) {
 	}
 	r.Grade = grade
 	r.Measured = known(metered.Value())
-	r.Coverage = coverage(metered.Value(), filled.Value())
+	r.Coverage = coverage(measured.Value(), filled.Value())
 	if machines {
 		r.MachineKWh = known(machine.Value())
 	}
@@ -47,7 +49,7 @@ func (p *Part) grade() Grade {
 		return Estimated
 	case p.Averaged:
 		return Averaged
-	case p.filled > 0:
+	case p.filled.Value() > 0:
 		return Filled
 	}
 	return Measured
@@ -88,9 +90,13 @@ func (r *Run) price(m Method) {
 	r.noteSources()
 }
 
+// rounding is how far, relatively, sums of floats may lie beside a limit that
+// they are exactly at.
+const rounding = 1e-12
+
 // holeLimit is the share of a run's energy that an annual mean may price in
-// holes of a series. The factor absorbs the rounding of 1 - 0.95.
-func holeLimit(m Method) unit.Share { return (1 - m.MinCoverage) * (1 + 1e-12) }
+// holes of a series.
+func holeLimit(m Method) unit.Share { return (1 - m.MinCoverage) * (1 + rounding) }
 
 // priceDoubts tells whether some hour has no price that may be used.
 func (r *Run) priceDoubts(m Method, annual, hole unit.Share, priced [4]bool) (doubted bool) {
@@ -176,8 +182,10 @@ func (r *Run) prove(embodied unit.Mass) {
 		if p.Facts.Site == nil || p.Facts.Machine == nil {
 			continue
 		}
-		total.Add(p.proven.operational)
 		facility.Add(p.proven.facility)
+		if p.Facts.Site.Broken == nil {
+			total.Add(p.proven.operational)
+		}
 	}
 	total.Add(embodied)
 	r.Proven = Proven{total.Value(), facility.Value()}
@@ -212,6 +220,7 @@ func (r *Run) energyTerms() {
 // scales with everything in the chain.
 func (r *Run) massTerms() {
 	t := &r.Terms.Mass
+	expected := map[string]float64{} // by zone, for parts share its weather too
 	for _, p := range r.Pieces {
 		var operational float64
 		for _, s := range p.priced {
@@ -221,6 +230,10 @@ func (r *Run) massTerms() {
 		t.add(InputIntensity, p.zone(), operational)
 		t.add(InputEmbodied, p.Facts.Machine.Name, float64(p.embodied))
 		t.Random += p.random.mass
+		expected[p.zone()] += p.expected
+	}
+	for _, zone := range slices.Sorted(maps.Keys(expected)) {
+		t.Random += expected[zone] * expected[zone]
 	}
 }
 
