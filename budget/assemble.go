@@ -32,6 +32,7 @@ func (p *Policy) Runs(parts []*footprint.Part) (runs []*footprint.Run, stray []*
 	for _, k := range order {
 		runs = append(runs, p.run(groups[k]))
 	}
+	slices.SortStableFunc(stray, func(a, b *footprint.Part) int { return cmp.Compare(a.File, b.File) })
 	slices.SortStableFunc(runs, func(a, b *footprint.Run) int {
 		return cmp.Or(cmp.Compare(a.Start, b.Start), cmp.Compare(a.Run, b.Run), cmp.Compare(a.Attempt, b.Attempt))
 	})
@@ -63,10 +64,11 @@ func (p *Policy) run(parts []*footprint.Part) *footprint.Run {
 	r := footprint.Combine(once, p.Method())
 	r.Notes = append(r.Notes, notes...)
 	r.Doubts = append(r.Doubts, doubts...)
+	dropAbsurd(r)
 	return r
 }
 
 func sameContent(a, b *footprint.Part) bool {
-	return a.Digest == b.Digest && a.End == b.End && a.Outcome == b.Outcome &&
+	return a.Digest == b.Digest && a.End == b.End && a.Outcome == b.Outcome && a.Findings.Len() == b.Findings.Len() &&
 		reflect.DeepEqual(a.Open, b.Open) && reflect.DeepEqual(a.Work, b.Work)
 }

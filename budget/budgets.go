@@ -30,7 +30,7 @@ func (j *judgement) budgets() {
 
 // ruling is an empty ruling of the budget.
 func (b *Budget) ruling(branch string) Ruling {
-	limit := b.Limit.base()
+	limit := b.Limit.shown(b.Limit.base())
 	return Ruling{Kind: KindBudget, Name: b.Name, Branch: branch, Job: b.Job, Per: b.Per, Limit: &limit, Unit: b.Limit.unit(),
 		LimitText: b.Limit.String(), PolicyLine: b.Line, PolicyFile: b.File}
 }
@@ -44,9 +44,11 @@ func (b *Budget) covers(job, stage string) bool {
 // run matches and none has to: then there is nothing to rule on.
 func (j *judgement) perRun(b *Budget) (worst Ruling, ok bool) {
 	take := func(r Ruling) {
+		missing := worst.Missing || worst.State != Unproven // what is shown hides nothing but missing records
 		if !ok || r.worse(worst) {
 			worst, ok = r, true
 		}
+		worst.Missing = worst.Missing && missing && (r.Missing || r.State != Unproven)
 	}
 	runs := 0
 	for _, run := range j.head {
@@ -57,14 +59,23 @@ func (j *judgement) perRun(b *Budget) (worst Ruling, ok bool) {
 	}
 	for _, job := range j.policy.Jobs {
 		// A job without a stage may run at any that the budget is about.
-		if job.Required && matches(b.Job, job.Name) && (job.Stage == "" || matches(b.Stage, job.Stage)) && !j.satisfied(job) {
-			r := b.ruling(j.c.Branch)
-			r.Job, r.State, r.Reason = job.Name, Unproven, j.missing(job)
+		if !matches(b.Job, job.Name) || job.Stage != "" && !matches(b.Stage, job.Stage) {
+			continue
+		}
+		r := b.ruling(j.c.Branch)
+		r.Job = job.Name
+		switch {
+		case j.standing.unchanged(job):
+			r.State, r.Reason = Within, unchanged
+			take(r)
+		case job.Required && !j.satisfied(job):
+			r.State = Unproven
+			r.Reason, r.Missing = j.missing(job)
 			take(r)
 		}
 	}
 	if runs > 1 && worst.Observed != nil {
-		worst.Reason = joinReason(fmt.Sprintf("largest of %d runs", runs), worst.Reason)
+		worst.Reason = joinReason(fmt.Sprintf("worst of %d runs", runs), worst.Reason)
 	}
 	return worst, ok
 }
@@ -106,6 +117,9 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 		j.settle(&r, b, a)
 	}
 	if known && len(run.Doubts) == 0 {
+		if r.State == Unproven {
+			r.Reason = "above the limit, but by less than its expanded uncertainty"
+		}
 		return r
 	}
 	proven := b.Limit.proven(run, j.policy.Method().Uncertainty)
@@ -116,7 +130,7 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 	}
 	r.State, r.Reason, r.Conformance = Unproven, "the evidence is in doubt", nil
 	if len(run.Doubts) > 0 {
-		r.Reason = run.Doubts[0].Reason
+		r.Reason, r.Missing = run.Doubts[0].Reason, onlyMissing(run.Doubts)
 	}
 	return r
 }
@@ -125,7 +139,8 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 func (j *judgement) settle(r *Ruling, b *Budget, a amount) {
 	limit := b.Limit.base()
 	r.State = j.state(b, a)
-	r.Observed = &a.value
+	observed := b.Limit.shown(a.value)
+	r.Observed = &observed
 	if limit > 0 {
 		share := a.value / limit
 		r.Share = &share
@@ -142,10 +157,11 @@ func (j *judgement) settle(r *Ruling, b *Budget, a amount) {
 
 // state applies the decision rule, with the expanded uncertainty U = 2u where
 // it is guarded (JCGM 106:2012; ILAC-G8:09/2019), and warn_at. Exactly at the
-// limit is within.
+// limit is within, and exactly at warn_at, for which shares are compared: a
+// share of the limit would be rounded.
 func (j *judgement) state(b *Budget, a amount) State {
 	st := decide(j.policy.Account.Decision, a.value, 2*a.u, b.Limit.base())
-	if st == Within && b.WarnAt != nil && a.value > float64(*b.WarnAt)*b.Limit.base() {
+	if st == Within && b.WarnAt != nil && a.value/b.Limit.base() > float64(*b.WarnAt) {
 		return Near
 	}
 	return st

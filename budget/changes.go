@@ -45,7 +45,7 @@ func (s *Statement) comparable(r *footprint.Run) bool {
 	reason := ""
 	switch {
 	case !r.Outcome.Evidence():
-		reason = fmt.Sprintf("it %s", r.Outcome)
+		reason = fmt.Sprintf("its outcome is %s", r.Outcome)
 	case len(r.Doubts) > 0:
 		reason = r.Doubts[0].Reason
 	case r.Total == nil:

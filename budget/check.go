@@ -1,7 +1,9 @@
 package budget
 
 import (
+	"errors"
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 	"time"
@@ -18,20 +20,20 @@ type checker struct{ report func(finding.Finding) }
 
 // refuse reports a key of a table; do says what to write instead.
 func (c checker) refuse(p Place, key, do, format string, args ...any) {
-	c.report(finding.Finding{File: p.File, Line: p.line(key), What: fmt.Sprintf(format, args...), Do: do})
+	file, line := p.of(key)
+	c.report(finding.Finding{File: file, Line: line, What: fmt.Sprintf(format, args...), Do: do})
 }
 
 // check looks at the policy as a whole.
 func (p *Policy) check(report func(finding.Finding)) {
 	c := checker{report}
 	if p.Format != 1 {
-		report(finding.Finding{File: p.Files[0], Line: 1, What: fmt.Sprintf("format is %d", p.Format),
-			Do: "this version reads format 1; write that, or use a newer budgetcheck"})
+		c.refuse(p.Place, "format", "this version reads format 1; write that, or use a newer budgetcheck", "format is %d", p.Format)
 	}
 	c.account(p.Account)
 	c.evidence(p.Evidence)
-	for _, glob := range p.Grid.Series {
-		c.glob(p.Grid.Place, "series", glob)
+	for n, glob := range p.Grid.Series {
+		c.glob(p.Grid.item("series", n), "series", glob)
 	}
 	for _, name := range names(p.Sites) {
 		c.site(p.Sites[name])
@@ -44,19 +46,20 @@ func (p *Policy) check(report func(finding.Finding)) {
 }
 
 func (c checker) account(a Account) {
-	if _, err := time.LoadLocation(a.Timezone); err != nil || a.Timezone == "Local" {
+	if _, err := time.LoadLocation(a.Timezone); err != nil || a.Timezone == "" || a.Timezone == "Local" {
 		c.refuse(a.Place, "timezone", `write UTC or a name like "Etc/GMT-1" from the time zone database`, "account.timezone %q is not known", a.Timezone)
 	}
 	if !doublestar.ValidatePattern(a.ReleaseTags) {
 		c.glob(a.Place, "release_tags", a.ReleaseTags)
 	}
-	u := a.Uncertainty
+	u, declared := a.Uncertainty, false
 	for _, v := range []*unit.Share{u.Meter, u.Share, u.PUE, u.Intensity, u.Embodied} {
+		declared = declared || v != nil
 		if v != nil && *v > 1 {
 			c.refuse(a.Place, "uncertainty", `write relative standard uncertainties (k = 1), like "2%"`, "account.uncertainty has a value of %s", *v)
 		}
 	}
-	if a.Decision == Guarded && u.Place.keys == nil {
+	if a.Decision == Guarded && !declared {
 		c.refuse(a.Place, "decision", "declare account.uncertainty, or write simple", "account.decision is guarded but no uncertainty is declared")
 	}
 }
@@ -74,19 +77,16 @@ func (c checker) evidence(e Evidence) {
 }
 
 func (c checker) site(s *Site) {
-	if s.Zone == "" {
-		c.refuse(s.Place, "zone", "name the grid zone", "the zone of site %s is empty", s.Name)
-	}
 	if s.PUE != nil && !(*s.PUE >= 1 && *s.PUE <= 10) {
 		c.refuse(s.Place, "pue", "write facility energy over IT energy, from 1 up", "the PUE of site %s is %v", s.Name, *s.PUE)
 	}
 	if (s.Market == nil) != (s.MarketBasis == "") {
-		c.refuse(s.Place, "market", "write both or neither", "site %s has only one of market and market_basis", s.Name)
+		c.refuse(s.Place, s.either("market", "market_basis"), "write both or neither", "site %s has only one of market and market_basis", s.Name)
 	}
 }
 
 func (c checker) machine(m *Machine) {
-	if !(m.Units > 0) {
+	if !(m.Units > 0) || math.IsInf(m.Units, 0) {
 		c.refuse(m.Place, "units", "write how many units can be reserved", "machine %s has %v units", m.Name, m.Units)
 	}
 	if m.MeasuredShare != nil && m.Unmetered != nil {
@@ -101,8 +101,11 @@ func (c checker) machine(m *Machine) {
 	if m.Idle != nil && m.Rated != nil && *m.Idle >= *m.Rated {
 		c.refuse(m.Place, "idle", "write the smaller power as idle", "machine %s has idle %s and rated %s", m.Name, *m.Idle, *m.Rated)
 	}
-	if (m.Embodied == nil) != (m.Lifetime == nil) || m.Lifetime != nil && *m.Lifetime <= 0 {
-		c.refuse(m.Place, "embodied", "write both, with a lifetime above zero, or neither", "machine %s does not have embodied with a lifetime", m.Name)
+	if (m.Embodied == nil) != (m.Lifetime == nil) {
+		c.refuse(m.Place, m.either("embodied", "lifetime"), "write both or neither", "machine %s has only one of embodied and lifetime", m.Name)
+	}
+	if m.Lifetime != nil && *m.Lifetime <= 0 {
+		c.refuse(m.Place, "lifetime", "write a duration above zero", "machine %s has a lifetime of %s", m.Name, *m.Lifetime)
 	}
 }
 
@@ -114,14 +117,14 @@ func (c checker) jobs(p *Policy) {
 		} else {
 			seen[id] = true
 		}
-		for _, s := range j.Sites {
-			c.known(j.Place, "sites", "site", s, names(p.Sites))
+		for n, s := range j.Sites {
+			c.known(j.item("sites", n), "site", s, names(p.Sites))
 		}
-		for _, m := range j.Machines {
-			c.known(j.Place, "machines", "machine", m, names(p.Machines))
+		for n, m := range j.Machines {
+			c.known(j.item("machines", n), "machine", m, names(p.Machines))
 		}
-		for _, glob := range j.Paths {
-			c.glob(j.Place, "paths", glob)
+		for n, glob := range j.Paths {
+			c.glob(j.item("paths", n), "paths", glob)
 		}
 		c.timing(j)
 	}
@@ -129,24 +132,34 @@ func (c checker) jobs(p *Policy) {
 
 func (c checker) timing(j *Job) {
 	if j.Schedule != "" {
-		if _, err := cron.ParseStandard(j.Schedule); err != nil {
+		if err := readSchedule(j.Schedule); err != nil {
 			c.refuse(j.Place, "schedule", `write five cron fields, like "15 2 * * *"`, "the schedule of job %s cannot be read (%v)", j.Name, err)
 		}
 	}
-	if j.Stretch != nil && !(*j.Stretch >= 1) {
-		c.refuse(j.Place, "stretch", "write 1 or more", "the stretch of job %s is %v", j.Name, *j.Stretch)
+	if j.Stretch != nil && (!(*j.Stretch >= 1) || math.IsInf(*j.Stretch, 0)) {
+		c.refuse(j.Place, "stretch", "write a number from 1 up", "the stretch of job %s is %v", j.Name, *j.Stretch)
 	}
 	if j.Slot != nil && *j.Slot <= 0 {
 		c.refuse(j.Place, "slot", "write a duration above zero", "the slot of job %s is %s", j.Name, *j.Slot)
 	}
-	if j.ResumeKWh != nil && !(*j.ResumeKWh >= 0) {
+	if j.ResumeKWh != nil && (!(*j.ResumeKWh >= 0) || math.IsInf(*j.ResumeKWh, 0)) {
 		c.refuse(j.Place, "resume_kwh", "write an energy in kWh from 0 up", "the resume_kwh of job %s is %v", j.Name, *j.ResumeKWh)
 	}
 }
 
-func (c checker) known(p Place, key, what, name string, known []string) {
+// readSchedule reads cron fields. A time zone that no fields follow makes
+// version 3.0.1 of the library panic.
+func readSchedule(text string) error {
+	if zone, _, fields := strings.Cut(text, " "); !fields && strings.Contains(zone, "TZ=") {
+		return errors.New("no fields follow the time zone")
+	}
+	_, err := cron.ParseStandard(text)
+	return err
+}
+
+func (c checker) known(p Place, what, name string, known []string) {
 	if !slices.Contains(known, name) {
-		c.refuse(p, key, fmt.Sprintf("add [%s.%s], or use one of [%s]%s", what, name, strings.Join(known, ", "), nearest(name, known)), "%s %q is not in the policy", what, name)
+		c.refuse(p, "", fmt.Sprintf("add [%s.%s], or use one of [%s]%s", what, name, strings.Join(known, ", "), nearest(name, known)), "%s %q is not in the policy", what, name)
 	}
 }
 

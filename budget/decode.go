@@ -16,15 +16,32 @@ import (
 type Place struct {
 	File string
 	Line int
-	keys map[string]int
+	keys map[string]*node // as written; files that add up may share one table
 }
 
-// line is the line of a key of the table, or of the table itself.
-func (p Place) line(key string) int {
-	if n, ok := p.keys[key]; ok {
-		return n
+// said tells whether the table has the key.
+func (p Place) said(key string) bool { return p.keys[key] != nil }
+
+// item is where an item of one of the table's lists stands.
+func (p Place) item(key string, n int) Place {
+	i := p.keys[key].list[n]
+	return Place{File: i.file, Line: i.line}
+}
+
+// either is the one of two keys that the table has.
+func (p Place) either(a, b string) string {
+	if p.said(a) {
+		return a
 	}
-	return p.Line
+	return b
+}
+
+// of is where a key of the table stands, or the table itself.
+func (p Place) of(key string) (file string, line int) {
+	if n := p.keys[key]; n != nil {
+		return n.file, n.line
+	}
+	return p.File, p.Line
 }
 
 // setter is a value that is written as text, like the quantities of unit.
@@ -45,15 +62,16 @@ func (d decoder) refuse(n *node, do, format string, args ...any) {
 
 // table fills the struct v from n. name is what messages call the table.
 func (d decoder) table(n *node, v reflect.Value, name string) {
+	if p := v.FieldByName("Place"); p.IsValid() {
+		p.Set(reflect.ValueOf(Place{n.file, n.line, n.table}))
+	}
 	if n.table == nil {
 		d.refuse(n, "write it as a table", "%s is not a table", name)
 		return
 	}
-	place := Place{File: n.file, Line: n.line, keys: map[string]int{}}
 	fields := fieldsOf(v)
 	for _, key := range n.keys() {
 		inner := n.table[key]
-		place.keys[key] = inner.line
 		f, ok := fields[key]
 		if !ok {
 			d.refuse(inner, suggest(key, fields), "unknown key %s", qualified(name, key))
@@ -61,12 +79,12 @@ func (d decoder) table(n *node, v reflect.Value, name string) {
 		}
 		d.value(inner, f, qualified(name, key))
 	}
-	if p := v.FieldByName("Place"); p.IsValid() {
-		p.Set(reflect.ValueOf(place))
-	}
 	for _, key := range required(v.Type()) {
-		if n.table[key] == nil {
+		switch inner := n.table[key]; {
+		case inner == nil:
 			d.refuse(n, "add it", "%s has no %s", or(name, "the policy"), key)
+		case inner.value == "":
+			d.refuse(inner, "write what it is", "%s is empty", qualified(name, key))
 		}
 	}
 }
@@ -166,7 +184,8 @@ func (d decoder) set(n *node, s setter, name string) {
 		return
 	}
 	if err := s.Set(fmt.Sprint(n.value)); err != nil {
-		d.refuse(n, "", "%s: %v", name, err)
+		what, do, _ := strings.Cut(err.Error(), "; ")
+		d.refuse(n, do, "%s: %s", name, what)
 	}
 }
 

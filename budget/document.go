@@ -1,6 +1,7 @@
 package budget
 
 import (
+	"bytes"
 	"errors"
 	"fmt"
 	"slices"
@@ -25,6 +26,7 @@ type node struct {
 // parseDocument reads TOML into nodes. The library checks the syntax and gives
 // the values; its syntax tree gives the lines, which a policy's rulings carry.
 func parseDocument(data []byte, file string) (*node, *finding.Finding) {
+	data = bytes.TrimPrefix(data, []byte("\xef\xbb\xbf")) // a byte order mark says nothing
 	var values map[string]any
 	if err := toml.Unmarshal(data, &values); err != nil {
 		return nil, syntaxFinding(err, file)
@@ -46,7 +48,7 @@ func syntaxFinding(err error, file string) *finding.Finding {
 	return f
 }
 
-// lines maps the path of each key to its line. Paths are made by path().
+// lines maps the path of each key to its line. Paths are made by keyPath and element.
 type lines struct {
 	parser unstable.Parser
 	at     map[string]int
@@ -54,7 +56,7 @@ type lines struct {
 	prefix string         // path of the table being read
 }
 
-func path(prefix, key string) string { return fmt.Sprintf("%s\x1f%s", prefix, key) }
+func keyPath(prefix, key string) string { return fmt.Sprintf("%s\x1f%s", prefix, key) }
 
 func element(list string, n int) string { return fmt.Sprintf("%s\x1f[%d]", list, n) }
 
@@ -73,7 +75,7 @@ func (l *lines) expression(e *unstable.Node) {
 // means the last of them, or with next a new one.
 func (l *lines) header(e *unstable.Node, next bool) (p string) {
 	for it := e.Key(); it.Next(); {
-		p = path(p, string(it.Node().Data))
+		p = keyPath(p, string(it.Node().Data))
 		l.note(p, it.Node())
 		if next && it.IsLast() {
 			l.count[p]++
@@ -95,7 +97,7 @@ func (l *lines) note(p string, n *unstable.Node) {
 
 func (l *lines) pair(e *unstable.Node, prefix string) {
 	for it := e.Key(); it.Next(); {
-		prefix = path(prefix, string(it.Node().Data))
+		prefix = keyPath(prefix, string(it.Node().Data))
 		l.note(prefix, it.Node())
 	}
 	l.inside(e.Value(), prefix)
@@ -109,8 +111,12 @@ func (l *lines) inside(v *unstable.Node, p string) {
 		case unstable.InlineTable:
 			l.pair(children.Node(), p)
 		case unstable.Array:
-			l.at[element(p, n)] = l.at[p]
-			l.inside(children.Node(), element(p, n))
+			item, at := children.Node(), element(p, n)
+			l.at[at] = l.at[p] // an array in an array does not tell its own line
+			if item.Raw.Length > 0 {
+				l.at[at] = l.parser.Shape(item.Raw).Start.Line
+			}
+			l.inside(item, at)
 		}
 	}
 }
@@ -121,7 +127,7 @@ func (l *lines) node(v any, p, file string) *node {
 	case map[string]any:
 		n.table = map[string]*node{}
 		for key, inner := range v {
-			n.table[key] = l.node(inner, path(p, key), file)
+			n.table[key] = l.node(inner, keyPath(p, key), file)
 		}
 	case []any:
 		n.list = make([]*node, len(v))
@@ -132,6 +138,14 @@ func (l *lines) node(v any, p, file string) *node {
 		n.value = v
 	}
 	return n
+}
+
+// shareFormat lets each of several files say the format, if they say the same.
+func (n *node) shareFormat(o *node) {
+	mine, theirs := n.table["format"], o.table["format"]
+	if mine != nil && theirs != nil && mine.value == theirs.value {
+		delete(o.table, "format")
+	}
 }
 
 // merge adds another file's document: tables add up, arrays of tables are

@@ -18,13 +18,13 @@ const skew = unit.Minute
 
 // examine doubts what the policy does not accept of the head runs. Records are
 // checked, not believed: they come from the code under review.
-func (p *Policy) examine(c *Case, head, base []*footprint.Run) {
+func (p *Policy) examine(c *Case, st *standing, head, base []*footprint.Run) {
 	for _, r := range slices.Concat(head, base) {
 		p.examineFacts(r)
 		p.examineRecord(r, c.Now)
 	}
 	for _, r := range head {
-		p.examineHead(r, c.Now)
+		p.examineHead(r, c.Now, st)
 	}
 	attempts(head)
 	copies(slices.Concat(head, base))
@@ -107,7 +107,14 @@ func (p *Policy) examineRecord(r *footprint.Run, now unit.Instant) {
 }
 
 // examineHead checks what is asked of head runs only.
-func (p *Policy) examineHead(r *footprint.Run, now unit.Instant) {
+func (p *Policy) examineHead(r *footprint.Run, now unit.Instant, st *standing) {
+	j := p.job(r.Job, r.Stage)
+	if p.Evidence.SameInputs {
+		st.examine(r, j)
+	}
+	if j != nil && st.bound(r, j) {
+		return // what the same inputs gave does not age
+	}
 	if old := now.Sub(r.End); old > p.Evidence.MaxAge {
 		got, want := unit.Apart(old, p.Evidence.MaxAge)
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ended %s ago, more than %s", r.Run, got, want),
@@ -118,14 +125,20 @@ func (p *Policy) examineHead(r *footprint.Run, now unit.Instant) {
 // attempts doubts runs whose earlier attempts are not there: all attempts are
 // charged, and none may be left out.
 func attempts(head []*footprint.Run) {
-	have := map[string]int{}
+	have := map[string][]int{}
 	for _, r := range head {
-		have[r.Run]++
+		have[r.Run] = append(have[r.Run], r.Attempt)
 	}
 	for _, r := range head {
-		if have[r.Run] < r.Attempt {
-			r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s is attempt %d, and an earlier attempt's record is not there; give it too", r.Run, r.Attempt),
-				Observed: float64(have[r.Run]), Limit: float64(r.Attempt), Unit: "attempts"})
+		upTo := 0
+		for _, attempt := range have[r.Run] {
+			if attempt <= r.Attempt {
+				upTo++
+			}
+		}
+		if upTo < r.Attempt {
+			r.Doubt(footprint.Doubt{Missing: true, Reason: fmt.Sprintf("run %s is attempt %d, and an earlier attempt's record is not there; give it too", r.Run, r.Attempt),
+				Observed: float64(upTo), Limit: float64(r.Attempt), Unit: "attempts"})
 		}
 	}
 }
@@ -214,13 +227,17 @@ func countedTwice(runs []*footprint.Run) {
 	}
 }
 
-// shareMeters sweeps over time with the last use of each meter at hand.
+// shareMeters sweeps over time with the last use of each meter at hand. Totals
+// are of no meter.
 func shareMeters(uses []use) {
 	last := map[string]use{}
 	for _, u := range uses {
+		if u.part.Averaged {
+			continue
+		}
 		for _, m := range u.part.Meters {
 			if before, ok := last[m.Name]; ok && u.from < before.to {
-				doubtBoth(before, u, fmt.Sprintf("counted twice: %s and %s both have meter %s of host %s from %s on",
+				doubtAll([]use{before, u}, fmt.Sprintf("counted twice: %s and %s both have meter %s of host %s from %s on",
 					before.part.File, u.part.File, m.Name, u.part.Open.Host, u.from))
 			}
 			if u.to >= last[m.Name].to {
@@ -245,7 +262,7 @@ func shareUnits(host string, uses []use) {
 			units += reservedUnits(g.part, m)
 		}
 		if units > m.Units*(1+1e-12) {
-			doubtBoth(going[0], u, fmt.Sprintf("counted twice: %v of the %v units of host %s are reserved at %s, by %s among others",
+			doubtAll(going, fmt.Sprintf("counted twice: %v of the %v units of host %s are reserved at %s, by %s among others",
 				units, m.Units, host, u.from, u.part.File))
 		}
 	}
@@ -258,10 +275,13 @@ func reservedUnits(part *footprint.Part, m *footprint.Machine) float64 {
 	return part.Open.Reserved
 }
 
-func doubtBoth(a, b use, reason string) {
-	d := footprint.Doubt{Reason: reason, Refutes: true}
-	a.run.Doubt(d)
-	if b.run != a.run {
-		b.run.Doubt(d)
+// doubtAll doubts each run of the uses once.
+func doubtAll(uses []use, reason string) {
+	var told []*footprint.Run
+	for _, u := range uses {
+		if !slices.Contains(told, u.run) {
+			told = append(told, u.run)
+			u.run.Doubt(footprint.Doubt{Reason: reason, Refutes: true})
+		}
 	}
 }

@@ -7,7 +7,9 @@ import (
 	"budgetcheck/budget/unit"
 )
 
-// base is the limit in its base unit: g, kWh, or g for one functional unit.
+// base is the limit as it is judged: in g, in kWh, or in g for as many
+// functional units as it names. Brought to one unit it would be rounded, and
+// exactly at the limit is within.
 func (l Limit) base() float64 {
 	switch {
 	case l.Mass != nil:
@@ -15,10 +17,18 @@ func (l Limit) base() float64 {
 	case l.Energy != nil:
 		return float64(*l.Energy)
 	}
-	return float64(l.Rate.PerUnit())
+	return float64(l.Rate.Mass)
 }
 
-// unit names the base unit.
+// shown brings a judged value to unit: a rate to one functional unit.
+func (l Limit) shown(v float64) float64 {
+	if l.Rate != nil {
+		return v / l.Rate.Per
+	}
+	return v
+}
+
+// unit names the unit of what is shown.
 func (l Limit) unit() string {
 	switch {
 	case l.Mass != nil:
@@ -60,7 +70,7 @@ func (l Limit) of(r *footprint.Run, d footprint.Declared) (a amount, known bool)
 }
 
 // proven is what the run's measured, priced part alone comes to. Its
-// uncertainty is taken in proportion.
+// uncertainty is taken from the whole run, which has no less.
 func (l Limit) proven(r *footprint.Run, d footprint.Declared) amount {
 	a := amount{value: float64(r.Proven.Total)}
 	terms, whole := r.Terms.Mass, r.Total != nil
@@ -74,9 +84,9 @@ func (l Limit) proven(r *footprint.Run, d footprint.Declared) amount {
 }
 
 func (l Limit) perWork(a amount, r *footprint.Run) amount {
-	if l.Rate != nil {
-		a.value /= r.Work.Done
-		a.u /= r.Work.Done
+	if l.Rate != nil { // multiplied first: whole numbers stay exact
+		a.value = a.value * l.Rate.Per / r.Work.Done
+		a.u = a.u * l.Rate.Per / r.Work.Done
 	}
 	return a
 }
@@ -104,9 +114,9 @@ func (l Limit) interval(v, expanded float64) string {
 	return r.Worded(r.Mass.PlusMinus(u.Mass))
 }
 
-// rate tells a mass per functional unit in the way that the limit is written.
-func (l Limit) rate(perUnit float64) unit.Rate {
-	return unit.Rate{Mass: unit.Mass(perUnit * l.Rate.Per), Per: l.Rate.Per, Unit: l.Rate.Unit}
+// rate tells a judged value in the way that the limit is written.
+func (l Limit) rate(v float64) unit.Rate {
+	return unit.Rate{Mass: unit.Mass(v), Per: l.Rate.Per, Unit: l.Rate.Unit}
 }
 
 // texts prints an observed value beside the limit, and their difference.

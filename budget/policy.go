@@ -18,6 +18,7 @@ import (
 // Policy is the budget file of a repository, or several that add up. Each
 // table knows its place, for rulings are told by the line of their rule.
 type Policy struct {
+	Place                           // of the keys outside any table
 	Format      int                 `toml:"format,required"`
 	Account     Account             `toml:"account"`
 	Evidence    Evidence            `toml:"evidence"`
@@ -29,8 +30,9 @@ type Policy struct {
 	Regressions []*Regression       `toml:"regression"`
 	Waivers     []*Waiver           `toml:"waiver"`
 
-	Files []string // as the user named them
-	bare  bool     // no policy at all: sites stand for zones
+	Files  []string // as the user named them
+	Prefix string   // what leads to Files from the root of the repository, with slashes
+	bare   bool     // no policy at all: sites stand for zones
 }
 
 // Account is how sums are made and decided.
@@ -240,25 +242,25 @@ func ParsePolicy(files ...PolicyFile) (*Policy, []finding.Finding) {
 	report := func(f finding.Finding) { found = append(found, f) }
 	p := defaults()
 	var whole *node
+	broken := false
 	for _, f := range files {
 		p.Files = append(p.Files, f.Name)
 		n, bad := parseDocument(f.Data, f.Name)
 		switch {
 		case bad != nil:
 			report(*bad)
+			broken = true
 		case whole == nil:
 			whole = n
 		default:
-			delete(n.table, "format") // each file may say it
+			whole.shareFormat(n)
 			whole.merge(n, report)
 		}
 	}
-	if whole != nil && len(found) == 0 {
+	if whole != nil && !broken {
 		decoder{report}.table(whole, reflect.ValueOf(p).Elem(), "")
 		p.complete()
-		if len(found) == 0 {
-			p.check(report)
-		}
+		p.check(besides(found, report))
 	}
 	slices.SortStableFunc(found, func(a, b finding.Finding) int {
 		if c := slices.Index(p.Files, a.File) - slices.Index(p.Files, b.File); c != 0 {
@@ -272,19 +274,40 @@ func ParsePolicy(files ...PolicyFile) (*Policy, []finding.Finding) {
 // complete fills in what absent keys of repeated tables mean.
 func (p *Policy) complete() {
 	for _, m := range p.Machines {
-		if _, said := m.keys["units"]; !said {
+		if !m.said("units") {
 			m.Units = 1
 		}
 	}
 	for _, b := range p.Budgets {
-		b.Branch, b.Job, b.Stage = or(b.Branch, "**"), or(b.Job, "**"), or(b.Stage, "**")
+		b.anywhere(&b.Branch, &b.Job, &b.Stage)
 		b.Landing = or(b.Landing, "warn")
 	}
 	for _, r := range p.Regressions {
-		r.Branch, r.Job, r.Stage = or(r.Branch, "**"), or(r.Job, "**"), or(r.Stage, "**")
+		r.anywhere(&r.Branch, &r.Job, &r.Stage)
 		r.Measure, r.Grid, r.Against = or(r.Measure, "total"), or(r.Grid, "hold"), or(r.Against, "branch")
-		if _, said := r.keys["base_runs"]; !said {
+		if !r.said("base_runs") {
 			r.BaseRuns = 10
+		}
+	}
+}
+
+// anywhere gives a rule that names no branch, job or stage the glob for all. An
+// empty glob that somebody wrote stays, and is refused.
+func (p Place) anywhere(branch, job, stage *string) {
+	for key, glob := range map[string]*string{"branch": branch, "job": job, "stage": stage} {
+		if !p.said(key) {
+			*glob = "**"
+		}
+	}
+}
+
+// besides reports what is found besides what was told of the same line: what
+// could not be read has no value to check.
+func besides(told []finding.Finding, report func(finding.Finding)) func(finding.Finding) {
+	told = slices.Clone(told)
+	return func(f finding.Finding) {
+		if !slices.ContainsFunc(told, func(t finding.Finding) bool { return t.File == f.File && t.Line == f.Line }) {
+			report(f)
 		}
 	}
 }

@@ -11,15 +11,23 @@ func (s *Statement) Sentence(quote func(string) string) string {
 	if s.unruled {
 		return fmt.Sprintf("no rule of %s applies to branch %s", quote(s.PolicySource), quote(s.Branch))
 	}
-	n := s.count()
 	if len(s.Rulings) == 0 {
 		return "no ruling was due"
 	}
 	worst := s.Rulings[0]
+	if s.adoption && s.Gate == Open {
+		return fmt.Sprintf("branch %s has no policy yet; by this change's own, %s", quote(s.Branch), s.sentence(worst, quote))
+	}
+	return s.sentence(worst, quote)
+}
+
+// sentence tells the worst ruling and how the others went.
+func (s *Statement) sentence(worst Ruling, quote func(string) string) string {
+	n := s.count()
 	switch {
 	case worst.State != Over && worst.State != Unproven:
 		return s.tally(n)
-	case s.Gate == Open:
+	case s.Gate == Open && !s.adoption:
 		return "the policy only warns: " + worst.headline(quote) + s.others(n)
 	}
 	return worst.headline(quote) + s.others(n)

@@ -3,7 +3,7 @@ package budget
 import (
 	"fmt"
 	"slices"
-	"strconv"
+	"strings"
 
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/unit"
@@ -34,21 +34,23 @@ type StarterJob struct {
 	Limit       string // room above the largest run; empty where no run has a figure
 }
 
-// Quote writes a text as a TOML string. Records are untrusted even here.
+// Quote writes a text as a TOML string in plain ASCII. Records are untrusted
+// even here.
 func (Starter) Quote(text string) string {
-	quoted := strconv.QuoteToASCII(text)
-	var out []byte
-	for i := 0; i < len(quoted); i++ {
-		if quoted[i] == '\\' && (quoted[i+1] == 'x' || quoted[i+1] == 'a' || quoted[i+1] == 'v') {
-			return fmt.Sprintf("%q", "?") // no byte of these stands in a valid name
+	var b strings.Builder
+	b.WriteByte('"')
+	for _, r := range text { // bytes that are no UTF-8 come as U+FFFD
+		switch {
+		case r == '"' || r == '\\':
+			b.WriteByte('\\')
+			b.WriteRune(r)
+		case r < ' ' || r > '~':
+			fmt.Fprintf(&b, `\U%08X`, r)
+		default:
+			b.WriteRune(r)
 		}
-		if quoted[i] == '\\' {
-			out = append(out, quoted[i])
-			i++
-		}
-		out = append(out, quoted[i])
 	}
-	return string(out)
+	return b.String() + `"`
 }
 
 // NewStarter collects jobs, sites, machines and limits from runs that were

@@ -45,9 +45,14 @@ type Statement struct {
 	Changes      []Change         `json:"changes"`
 	Rulings      []Ruling         `json:"rulings"`
 	Accounts     []AccountLine    `json:"accounts"`
+	Edits        []Edit           `json:"policy_edits,omitempty"`
 	Notes        []string         `json:"notes,omitempty"` // what the reader must know beside the rulings
 
-	unruled bool // no rule of the policy applies to the branch
+	Preview  *Statement `json:"-"` // by the head's policy, where it differs
+	unruled  bool       // no rule of the policy applies to the branch
+	adoption bool       // the target has no policy yet
+	broken   bool       // the head's policy cannot be used
+	warns    bool       // unproven does not close the gate
 }
 
 // Kind tells which sort of rule a ruling is about.
@@ -77,6 +82,7 @@ type Ruling struct {
 	Confidence  *float64 `json:"confidence,omitempty"`
 	PolicyLine  int      `json:"policy_line,omitempty"`
 	PolicyFile  string   `json:"-"`
+	Missing     bool     `json:"-"` // unproven only for records that are still to come
 
 	// ObservedText and LimitText are for people: with units, and with as many
 	// figures as it takes to tell them apart.

@@ -31,25 +31,27 @@ type Held struct {
 // PUE and intensity, plus embodied emissions. ok is false where a side has no
 // run, or one without energy or emissions, of which no ratio can be told.
 func Hold(base, head []Sample) (h Held, ok bool) {
-	var machine, facility unit.Sum[unit.Energy]
+	var machine unit.Sum[unit.Energy]
 	var operational unit.Sum[unit.Mass]
 	for _, s := range base {
 		machine.Add(s.Machine)
-		facility.Add(s.Facility)
 		operational.Add(s.Operational)
 	}
-	perMachine := float64(operational.Value()) / float64(machine.Value()) // P0 x I0
+	perMachine := float64(operational.Value()) / float64(machine.Value()) // PUE x intensity
 	h.Base, h.Head = heldMean(base, perMachine), heldMean(head, perMachine)
 	h.Ratio = float64(h.Head)/float64(h.Base) - 1
-	return h, h.Base > 0 && h.Head > 0 && !math.IsInf(h.Ratio, 0)
+	return h, positive(float64(h.Base)) && positive(float64(h.Head)) && !math.IsInf(h.Ratio, 0)
 }
 
-// heldMean is the geometric mean of the runs' held totals; 0 where there is none.
+// positive tells whether v is above zero and finite.
+func positive(v float64) bool { return v > 0 && v <= math.MaxFloat64 }
+
+// heldMean is the geometric mean of the runs' held totals; 0 where one has none.
 func heldMean(runs []Sample, perMachine float64) unit.Mass {
 	held := make([]float64, len(runs))
 	for n, s := range runs {
 		held[n] = float64(s.Machine)*perMachine + float64(s.Embodied)
-		if !(held[n] > 0) {
+		if !positive(float64(s.Machine)) || !positive(held[n]) {
 			return 0
 		}
 	}

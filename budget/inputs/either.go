@@ -19,14 +19,14 @@ func (e Either) Blob(ctx context.Context, f File) ([]byte, error) {
 	return first(e, func(r Repository) ([]byte, error) { return r.Blob(ctx, f) })
 }
 
-// MergeBase is the best common ancestor.
-func (e Either) MergeBase(ctx context.Context, a, b string) (string, error) {
-	return first(e, func(r Repository) (string, error) { return r.MergeBase(ctx, a, b) })
-}
-
-// Tip is the commit that a branch points to.
-func (e Either) Tip(ctx context.Context, branch string) (string, error) {
-	return first(e, func(r Repository) (string, error) { return r.Tip(ctx, branch) })
+// Meet tells where head left a branch.
+func (e Either) Meet(ctx context.Context, ref, head string) (tip, base string, err error) {
+	type met struct{ tip, base string }
+	m, err := first(e, func(r Repository) (m met, err error) {
+		m.tip, m.base, err = r.Meet(ctx, ref, head)
+		return m, err
+	})
+	return m.tip, m.base, err
 }
 
 // first is the first answer; any failure sends the question on, and the last

@@ -22,6 +22,12 @@ func OpenGit(ctx context.Context, dir string) (*Git, error) {
 	return g, err
 }
 
+// Prefix is where dir lies in the work tree, with slashes; empty at its root.
+func (g *Git) Prefix(ctx context.Context) (string, error) {
+	out, err := g.run(ctx, "rev-parse", "--show-prefix")
+	return strings.TrimSuffix(strings.TrimSpace(string(out)), "/"), err
+}
+
 // run runs git on the clone. Its exit with a complaint wraps ErrUnknown.
 func (g *Git) run(ctx context.Context, args ...string) ([]byte, error) {
 	// A clone may belong to another user (containers): what is asked only reads.
@@ -80,32 +86,35 @@ func (g *Git) Blob(ctx context.Context, f File) ([]byte, error) {
 	return out, nil
 }
 
-// MergeBase is the best common ancestor. A shallow clone is not asked: it may
+// Meet tells where head left a branch. A shallow clone is not asked: it may
 // know a common ancestor and not the best one.
-func (g *Git) MergeBase(ctx context.Context, a, b string) (string, error) {
-	if err := errors.Join(plain(a), plain(b)); err != nil {
-		return "", err
-	}
+func (g *Git) Meet(ctx context.Context, ref, head string) (tip, base string, err error) {
 	if shallow, err := g.run(ctx, "rev-parse", "--is-shallow-repository"); err != nil || strings.TrimSpace(string(shallow)) != "false" {
-		return "", fmt.Errorf("merge base of %s and %s: the clone is shallow: %w", a, b, ErrUnknown)
+		return "", "", fmt.Errorf("where %s left %s: the clone is shallow: %w", head, ref, ErrUnknown)
 	}
-	out, err := g.run(ctx, "merge-base", a, b)
+	if tip, err = g.tip(ctx, ref); err != nil {
+		return "", "", err
+	}
+	if err := plain(head); err != nil {
+		return "", "", err
+	}
+	out, err := g.run(ctx, "merge-base", tip, head)
 	if err != nil {
-		return "", fmt.Errorf("merge base of %s and %s: %w", a, b, err)
+		return "", "", fmt.Errorf("where %s left %s: %w", head, ref, err)
 	}
-	return strings.TrimSpace(string(out)), nil
+	return tip, strings.TrimSpace(string(out)), nil
 }
 
-// Tip is the commit of a branch as the remote has it, else of the local one.
-func (g *Git) Tip(ctx context.Context, branch string) (string, error) {
-	if err := plain(branch); err != nil {
+// tip is the commit of a branch as the remote has it, else of the local one,
+// else the commit that the name itself is.
+func (g *Git) tip(ctx context.Context, ref string) (string, error) {
+	if err := plain(ref); err != nil {
 		return "", err
 	}
-	for _, ref := range []string{"refs/remotes/origin/", "refs/heads/"} {
-		out, err := g.run(ctx, "rev-parse", "--verify", "--quiet", ref+branch+"^{commit}")
-		if err == nil {
+	for _, name := range []string{"refs/remotes/origin/" + ref, "refs/heads/" + ref, ref} {
+		if out, err := g.run(ctx, "rev-parse", "--verify", "--quiet", name+"^{commit}"); err == nil {
 			return strings.TrimSpace(string(out)), nil
 		}
 	}
-	return "", fmt.Errorf("branch %s: %w", branch, ErrUnknown)
+	return "", fmt.Errorf("branch %s: %w", ref, ErrUnknown)
 }

@@ -13,6 +13,7 @@ import (
 	"encoding/hex"
 	"fmt"
 	"slices"
+	"strings"
 
 	"github.com/bmatcuk/doublestar/v4"
 )
@@ -34,10 +35,9 @@ type Repository interface {
 	Tree(ctx context.Context, commit string) (Tree, error)
 	// Blob reads a file's content.
 	Blob(ctx context.Context, f File) ([]byte, error)
-	// MergeBase is the best common ancestor of two commits.
-	MergeBase(ctx context.Context, a, b string) (string, error)
-	// Tip is the commit that a branch points to.
-	Tip(ctx context.Context, branch string) (string, error)
+	// Meet tells where a head commit left a branch: the branch's tip and the best
+	// common ancestor of the two. ref is a branch, or the id of its tip.
+	Meet(ctx context.Context, ref, head string) (tip, base string, err error)
 }
 
 // ErrUnknown is wrapped where a repository does not have what was asked for.
@@ -81,4 +81,9 @@ func (t Tree) Match(globs ...string) Tree {
 	}
 	slices.SortFunc(found, func(a, b File) int { return cmp.Compare(a.Path, b.Path) })
 	return found
+}
+
+// Literal makes a path a glob that matches it alone.
+func Literal(path string) string {
+	return strings.NewReplacer(`\`, `\\`, "*", `\*`, "?", `\?`, "[", `\[`, "]", `\]`, "{", `\{`, "}", `\}`).Replace(path)
 }

@@ -1,0 +1,157 @@
+package budget
+
+import (
+	"fmt"
+	"path"
+	"slices"
+
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/inputs"
+)
+
+// Commits are the commits that a judgement turns on, by their files.
+type Commits struct {
+	Head inputs.Tree // of the head commit
+	Base inputs.Tree // of the merge base; nil where there is none to compare with
+	// Named are the commits that records name, by their id, as far as the
+	// repository has them. It may include the head commit.
+	Named map[string]inputs.Tree
+}
+
+// standing tells which runs stand for the head commit, and which jobs a change
+// does not touch. A run stands for every commit with the same inputs.
+type standing struct {
+	policy  *Policy
+	commits *Commits // nil where no repository is at hand
+	head    string   // id of the head commit
+	hashes  map[hashKey]string
+}
+
+type hashKey struct {
+	job    *Job
+	commit string
+}
+
+// The names under which the two trees are cached; no commit id is so short.
+const (
+	atHead = "head"
+	atBase = "base"
+)
+
+func newStanding(p *Policy, c *Case) *standing {
+	return &standing{policy: p, commits: c.Commits, head: c.HeadCommit, hashes: map[hashKey]string{}}
+}
+
+// inputs is the hash over the job's files in a tree: those that its paths
+// match, by default all but the policy and the series.
+func (s *standing) inputs(j *Job, name string, t inputs.Tree) string {
+	k := hashKey{j, name}
+	if _, ok := s.hashes[k]; !ok {
+		var except []string
+		if len(j.Paths) == 0 {
+			except = s.policy.OwnFiles()
+		}
+		s.hashes[k] = t.Hash(j.Paths, except)
+	}
+	return s.hashes[k]
+}
+
+// OwnFiles are globs of the policy and its series in the repository.
+func (p *Policy) OwnFiles() (globs []string) {
+	for _, f := range p.Files {
+		globs = append(globs, inputs.Literal(path.Join(p.Prefix, f)))
+	}
+	return append(globs, p.SeriesGlobs()...)
+}
+
+// SeriesGlobs are the globs of the policy's series, from the root of the
+// repository.
+func (p *Policy) SeriesGlobs() (globs []string) {
+	if len(p.Files) == 0 {
+		return nil
+	}
+	dir := inputs.Literal(path.Dir(path.Join(p.Prefix, p.Files[0])))
+	for _, g := range p.Grid.Series {
+		globs = append(globs, path.Join(dir, g))
+	}
+	return globs
+}
+
+// unchanged tells whether the job's inputs are those of the merge base. Then
+// nothing is asked of it.
+func (s *standing) unchanged(j *Job) bool {
+	if s.commits == nil || s.commits.Base == nil || j == nil {
+		return false
+	}
+	return s.inputs(j, atHead, s.commits.Head) == s.inputs(j, atBase, s.commits.Base)
+}
+
+// of is the hash of a run's inputs; "" where its commit is not known.
+func (s *standing) of(r *footprint.Run, j *Job) string {
+	commit := r.Commit()
+	switch {
+	case s.commits == nil || j == nil || commit == "":
+		return ""
+	case commit == s.head:
+		return s.inputs(j, atHead, s.commits.Head)
+	}
+	t, ok := s.commits.Named[commit]
+	if !ok {
+		return ""
+	}
+	return s.inputs(j, commit, t)
+}
+
+// bound tells whether the run stands for the head commit: by its inputs, or,
+// where no repository is at hand, because it ran on that very commit.
+func (s *standing) bound(r *footprint.Run, j *Job) bool {
+	if s.commits == nil {
+		return s.head != "" && r.Commit() == s.head
+	}
+	return r.Inputs != "" && r.Inputs == s.inputs(j, atHead, s.commits.Head)
+}
+
+// examine doubts head runs that do not stand for the head commit.
+func (s *standing) examine(r *footprint.Run, j *Job) {
+	if s.head == "" || j == nil {
+		return
+	}
+	switch commit := r.Commit(); {
+	case s.bound(r, j):
+	case commit == "":
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s does not say with one voice on which commit it ran; write commit on the open line", r.Run)})
+	case s.commits == nil:
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, not the head commit, and there is no repository at hand to compare their inputs", r.Run, commit)})
+	case r.Inputs == "":
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, which is not in the repository", r.Run, commit)})
+	default:
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, where the inputs of job %s are not those of the head commit; run it again", r.Run, commit, j.Name)})
+	}
+}
+
+// noteBase says which base runs do not have the merge base's inputs.
+func (s *standing) noteBase(base []*footprint.Run) (notes []string) {
+	if s.commits == nil || s.commits.Base == nil {
+		return nil
+	}
+	for _, r := range base {
+		j := s.policy.job(r.Job, r.Stage)
+		if j != nil && r.Inputs != s.inputs(j, atBase, s.commits.Base) {
+			notes = append(notes, fmt.Sprintf("base run %s has other inputs than the merge base; it fills the base up", r.Run))
+		}
+	}
+	return notes
+}
+
+// touched are the head runs of which something is asked, and notes on those
+// of which nothing is.
+func (s *standing) touched(head []*footprint.Run) (kept []*footprint.Run, notes []string) {
+	kept = slices.DeleteFunc(slices.Clone(head), func(r *footprint.Run) bool {
+		unchanged := s.unchanged(s.policy.job(r.Job, r.Stage))
+		if unchanged {
+			notes = append(notes, fmt.Sprintf("the inputs of job %s are unchanged: run %s is not judged", r.Job, r.Run))
+		}
+		return unchanged
+	})
+	return kept, notes
+}
