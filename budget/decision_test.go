@@ -146,6 +146,17 @@ func TestWarnAt(t *testing.T) {
 	assert.Equal(t, budget.Near, r.State, "guarded too")
 }
 
+// Exactly at warn_at, n g of 100 g, for all n: a share of the limit would be
+// rounded, and 0.29 of 100 g lies below 29 g.
+func TestExactlyAtWarnAt(t *testing.T) {
+	for n := 1; n < 100; n++ {
+		s := sceneOf(night(func(s *sketch) { s.every = unit.Hour }))
+		s.series = edit(t, steady, "100,average", fmt.Sprintf("%d,average", n))
+		s.policy = edit(t, plain, `"150 g"`, `"100 g"`, "[evidence]\n", "[evidence]\nmax_gap = \"1h\"\n", "per = \"run\"\n", fmt.Sprintf("per = \"run\"\nwarn_at = 0.%02d\n", n))
+		assert.Equal(t, budget.Within, ruling(t, s.judge(t), "one training").State, "%d g", n)
+	}
+}
+
 func TestZeroLimit(t *testing.T) {
 	r := againstLimit(t, "0 g", "per = \"run\"\n", "per = \"run\"\nwarn_at = 0.5\n")
 	assert.Equal(t, budget.Over, r.State)

@@ -80,7 +80,7 @@ func examineWork(r *footprint.Run, j *Job) {
 		return
 	default:
 		planned := w.Planned
-		if j.Work != nil && w.Planned <= w.Done {
+		if j.Work != nil {
 			planned = max(planned, j.Work.Amount)
 		}
 		r.Pilot = planned > w.Done || r.Outcome == record.Pilot

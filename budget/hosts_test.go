@@ -45,9 +45,9 @@ func TestMeterInTwoRuns(t *testing.T) {
 	}
 	// A long run does not hide behind a short one that starts within it.
 	long := night(half("a.ndjson", "n1", "gpu0", "gpu1"), func(s *sketch) { s.length = 3 * unit.Hour; s.watts = []float64{25, 25} })
-	short := night(half("b.ndjson", "n2", "gpu2", "gpu3"), later(10*unit.Minute))
-	third := night(half("c.ndjson", "n3", "gpu0", "gpu3"), later(2*unit.Hour))
-	checkDoubt(t, sceneOf(long, short, third), "a.ndjson and c.ndjson both have meter gpu0")
+	short := night(half("b.ndjson", "n2", "gpu0", "gpu3"), later(10*unit.Minute))
+	third := night(half("c.ndjson", "n3", "gpu0", "gpu2"), later(2*unit.Hour))
+	checkDoubt(t, sceneOf(long, short, third), "a.ndjson and b.ndjson both have meter gpu0", "a.ndjson and c.ndjson both have meter gpu0")
 }
 
 // A base run's device counts as well.

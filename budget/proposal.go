@@ -61,10 +61,11 @@ type setting struct{ table, key string }
 type settingList struct {
 	order []setting
 	text  map[setting]string
+	names map[string]int // how many tables in arrays go by it
 }
 
 func settings(files []PolicyFile) settingList {
-	l := settingList{text: map[setting]string{}}
+	l := settingList{text: map[setting]string{}, names: map[string]int{}}
 	for _, f := range files {
 		if n, bad := parseDocument(f.Data, f.Name); bad == nil {
 			l.table(n, "")
@@ -80,7 +81,7 @@ func (l *settingList) table(n *node, name string) {
 			l.table(inner, qualified(name, key))
 		case inner.tables():
 			for i, item := range inner.list {
-				l.table(item, fmt.Sprintf("%s %q", qualified(name, key), item.called(i)))
+				l.table(item, l.unlike(fmt.Sprintf("%s %q", qualified(name, key), item.called(i))))
 			}
 		default:
 			k := setting{name, key}
@@ -90,6 +91,16 @@ func (l *settingList) table(n *node, name string) {
 			l.text[k] = inner.print()
 		}
 	}
+}
+
+// unlike tells tables of one name apart, so that none hides an edit of another:
+// a job may have one for each stage, a rule several waivers.
+func (l *settingList) unlike(name string) string {
+	l.names[name]++
+	if n := l.names[name]; n > 1 {
+		return fmt.Sprintf("%s (%d)", name, n)
+	}
+	return name
 }
 
 // called is what a table in an array goes by: its name or the rule it names.

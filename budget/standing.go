@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"path"
 	"slices"
+	"strings"
 
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/inputs"
@@ -43,15 +44,20 @@ func newStanding(p *Policy, c *Case) *standing {
 }
 
 // inputs is the hash over the job's files in a tree: those that its paths
-// match, by default all but the policy and the series.
+// match, by default all but the policy and the series. It is empty where the
+// paths match nothing: such a hash would be the same in every commit, and a
+// misspelt path would ask for no run ever.
 func (s *standing) inputs(j *Job, name string, t inputs.Tree) string {
 	k := hashKey{j, name}
 	if _, ok := s.hashes[k]; !ok {
-		var except []string
-		if len(j.Paths) == 0 {
-			except = s.policy.OwnFiles()
+		switch {
+		case len(j.Paths) == 0:
+			s.hashes[k] = t.Hash(nil, s.policy.OwnFiles())
+		case len(t.Match(j.Paths...)) > 0:
+			s.hashes[k] = t.Hash(j.Paths, nil)
+		default:
+			s.hashes[k] = ""
 		}
-		s.hashes[k] = t.Hash(j.Paths, except)
 	}
 	return s.hashes[k]
 }
@@ -83,7 +89,8 @@ func (s *standing) unchanged(j *Job) bool {
 	if s.commits == nil || s.commits.Base == nil || j == nil {
 		return false
 	}
-	return s.inputs(j, atHead, s.commits.Head) == s.inputs(j, atBase, s.commits.Base)
+	now := s.inputs(j, atHead, s.commits.Head)
+	return now != "" && now == s.inputs(j, atBase, s.commits.Base)
 }
 
 // of is the hash of a run's inputs; "" where its commit is not known.
@@ -103,12 +110,12 @@ func (s *standing) of(r *footprint.Run, j *Job) string {
 }
 
 // bound tells whether the run stands for the head commit: by its inputs, or,
-// where no repository is at hand, because it ran on that very commit.
+// where they cannot be compared, because it ran on that very commit.
 func (s *standing) bound(r *footprint.Run, j *Job) bool {
-	if s.commits == nil {
+	if s.commits == nil || s.inputs(j, atHead, s.commits.Head) == "" {
 		return s.head != "" && r.Commit() == s.head
 	}
-	return r.Inputs != "" && r.Inputs == s.inputs(j, atHead, s.commits.Head)
+	return r.Inputs == s.inputs(j, atHead, s.commits.Head)
 }
 
 // examine doubts head runs that do not stand for the head commit.
@@ -122,6 +129,8 @@ func (s *standing) examine(r *footprint.Run, j *Job) {
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s does not say with one voice on which commit it ran; write commit on the open line", r.Run)})
 	case s.commits == nil:
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, not the head commit, and there is no repository at hand to compare their inputs", r.Run, commit)})
+	case s.inputs(j, atHead, s.commits.Head) == "":
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, not the head commit, of which no file matches the paths of job %s", r.Run, commit, j.Name)})
 	case r.Inputs == "":
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, which is not in the repository", r.Run, commit)})
 	default:
@@ -134,13 +143,17 @@ func (s *standing) noteBase(base []*footprint.Run) (notes []string) {
 	if s.commits == nil || s.commits.Base == nil {
 		return nil
 	}
+	var others []string
 	for _, r := range base {
 		j := s.policy.job(r.Job, r.Stage)
 		if j != nil && r.Inputs != s.inputs(j, atBase, s.commits.Base) {
-			notes = append(notes, fmt.Sprintf("base run %s has other inputs than the merge base; it fills the base up", r.Run))
+			others = append(others, r.Run)
 		}
 	}
-	return notes
+	if len(others) == 0 {
+		return nil
+	}
+	return []string{fmt.Sprintf("base runs with other inputs than the merge base fill the base up: %s", strings.Join(others, ", "))}
 }
 
 // touched are the head runs of which something is asked, and notes on those

@@ -2,7 +2,6 @@ package report
 
 import (
 	"encoding/xml"
-	"fmt"
 	"io"
 
 	"budgetcheck/budget"
@@ -58,8 +57,11 @@ func JUnit(w io.Writer, s *budget.Statement) error {
 }
 
 func (s *suite) add(r budget.Ruling, warned bool) {
-	text := fmt.Sprintf("%s: observed %s, limit %s: %s", r.State, dash(r.ObservedText), dash(r.LimitText), reason(r))
-	m := &message{Inert(text), Inert(fmt.Sprintf("%s:%d: %s", r.PolicyFile, r.PolicyLine, text))}
+	text := Inert(told(r))
+	m := &message{text, text}
+	if at := place(r); at != "" {
+		m.Text = Inert(at) + ": " + text
+	}
 	c := testCase{Class: "budgetcheck." + string(r.Kind), Name: Inert(r.Name)}
 	if r.Job != "" {
 		c.Name = Inert(r.Name + ", job " + r.Job)
@@ -75,7 +77,7 @@ func (s *suite) add(r budget.Ruling, warned bool) {
 		c.Error = m
 		s.Errors++
 	default:
-		c.Out = Inert(text)
+		c.Out = text
 	}
 	s.Cases = append(s.Cases, c)
 }

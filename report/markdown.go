@@ -12,7 +12,7 @@ import (
 func Markdown(w io.Writer, s *budget.Statement) error {
 	var b strings.Builder
 	fmt.Fprintf(&b, "**Gate %s:** %s\n\n", s.Gate, s.Sentence(code))
-	fmt.Fprintf(&b, "%s\n", code(subject(s)))
+	fmt.Fprintf(&b, "%s\n", subject(s, code))
 	for _, t := range tables(s) {
 		markdownTable(&b, t)
 		if t.title == "Accounts" {
@@ -20,7 +20,7 @@ func Markdown(w io.Writer, s *budget.Statement) error {
 		}
 	}
 	markdownNotes(&b, allNotes(s.Notes, s.Runs))
-	fmt.Fprintf(&b, "\n%s\n", Caution)
+	fmt.Fprintf(&b, "\n%s\n", foot(s))
 	_, err := io.WriteString(w, b.String())
 	return err
 }
@@ -28,17 +28,14 @@ func Markdown(w io.Writer, s *budget.Statement) error {
 // markdownPages shows the accounts line by line. In a fenced block nothing is
 // a link or a mention; its fence is longer than any in it.
 func markdownPages(b *strings.Builder, s *budget.Statement) {
-	var lines []string
-	for n, a := range s.Accounts {
-		if n > 0 {
-			lines = append(lines, "")
-		}
-		lines = append(lines, page(a)...)
+	var pages []string
+	for _, a := range s.Accounts {
+		pages = append(pages, strings.Join(page(a), "\n"))
 	}
-	if len(lines) == 0 {
+	if len(pages) == 0 {
 		return
 	}
-	text := strings.Join(lines, "\n")
+	text := strings.Join(pages, "\n\n")
 	fence := strings.Repeat("`", max(3, longestRun(text, '`')+1))
 	fmt.Fprintf(b, "\n%sdiff\n%s\n%s\n", fence, text, fence)
 }
@@ -48,26 +45,36 @@ func markdownTable(b *strings.Builder, t table) {
 		return
 	}
 	if t.fold {
-		fmt.Fprintf(b, "\n<details><summary>%s (%d)</summary>\n", t.title, len(t.rows))
+		fmt.Fprintf(b, "\n<details><summary>%s (%d)</summary>\n\n", t.title, len(t.rows))
 		defer b.WriteString("\n</details>\n")
 	} else {
-		fmt.Fprintf(b, "\n#### %s\n", t.title)
+		fmt.Fprintf(b, "\n#### %s\n\n", t.title)
 	}
-	fmt.Fprintf(b, "\n| %s |\n|%s\n", strings.Join(t.head, " | "), strings.Repeat(" --- |", len(t.head)))
-	for _, row := range t.rows {
-		b.WriteString("|")
-		for _, c := range row {
-			fmt.Fprintf(b, " %s |", c.markdown())
+	rules := make([]string, len(t.head))
+	for n := range rules {
+		rules[n] = "---"
+		if t.right(n) {
+			rules[n] = "---:"
 		}
-		b.WriteString("\n")
+	}
+	markdownRow(b, t.head)
+	markdownRow(b, rules)
+	for _, row := range t.rows {
+		cells := make([]string, len(row))
+		for n, c := range row {
+			cells[n] = c.markdown()
+		}
+		markdownRow(b, cells)
 	}
 }
 
-// markdown writes a cell of a table. A pipe would end the cell even in a code
-// span and is escaped.
+func markdownRow(b *strings.Builder, cells []string) {
+	fmt.Fprintf(b, "| %s |\n", strings.Join(cells, " | "))
+}
+
 func (c cell) markdown() string {
-	if c.foreign && c.text != "-" {
-		return strings.ReplaceAll(code(c.text), "|", `\|`)
+	if c.foreign {
+		return cellCode(c.text)
 	}
 	return c.text
 }
@@ -76,7 +83,7 @@ func markdownNotes(b *strings.Builder, notes []string) {
 	if len(notes) == 0 {
 		return
 	}
-	b.WriteString("\n<details><summary>Notes</summary>\n\n")
+	fmt.Fprintf(b, "\n<details><summary>Notes (%d)</summary>\n\n", len(notes))
 	for _, n := range notes {
 		fmt.Fprintf(b, "- %s\n", code(n))
 	}

@@ -4,39 +4,26 @@ import (
 	"fmt"
 	"io"
 	"strings"
-	"text/tabwriter"
+	"unicode/utf8"
 
 	"budgetcheck/budget"
-	"budgetcheck/budget/footprint"
 )
 
 // Text writes the statement for a terminal or a log.
 func Text(w io.Writer, s *budget.Statement) error {
 	var b strings.Builder
-	fmt.Fprintf(&b, "Gate %s: %s\n", s.Gate, Inert(s.Reason))
-	fmt.Fprintf(&b, "%s\n", Inert(subject(s)))
+	fmt.Fprintf(&b, "Gate %s: %s\n", s.Gate, s.Sentence(Inert))
+	fmt.Fprintf(&b, "%s\n", subject(s, Inert))
 	for _, t := range tables(s) {
 		textTable(&b, t)
 		if t.title == "Accounts" {
 			textPages(&b, s)
 		}
 	}
-	textNotes(&b, s.Notes, s.Runs)
-	fmt.Fprintf(&b, "\n%s\n", Caution)
+	textNotes(&b, allNotes(s.Notes, s.Runs))
+	fmt.Fprintf(&b, "\n%s\n", foot(s))
 	_, err := io.WriteString(w, b.String())
 	return err
-}
-
-// subject says what was judged, by what, when.
-func subject(s *budget.Statement) string {
-	text := "branch " + s.Branch
-	if s.Pull > 0 {
-		text += fmt.Sprintf(", pull request %d", s.Pull)
-	}
-	if s.HeadCommit != "" {
-		text += ", commit " + s.HeadCommit
-	}
-	return fmt.Sprintf("%s, by the policy %s, at %s", text, s.PolicySource, s.Now)
 }
 
 func textPages(b *strings.Builder, s *budget.Statement) {
@@ -49,84 +36,44 @@ func textTable(b *strings.Builder, t table) {
 	if len(t.rows) == 0 {
 		return
 	}
-	fmt.Fprintf(b, "\n%s\n", t.title)
-	tw := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
-	fmt.Fprintf(tw, "  %s\n", strings.Join(t.head, "\t"))
+	lines := [][]string{t.head}
 	for _, row := range t.rows {
-		cells := make([]string, len(row))
+		line := make([]string, len(row))
 		for n, c := range row {
-			cells[n] = Inert(c.text)
+			line[n] = Inert(c.text)
 		}
-		fmt.Fprintf(tw, "  %s\n", strings.Join(cells, "\t"))
+		lines = append(lines, line)
 	}
-	tw.Flush()
+	fmt.Fprintf(b, "\n%s\n", t.title)
+	for _, line := range aligned(lines, t.right) {
+		fmt.Fprintf(b, "  %s\n", line)
+	}
 }
 
-func textNotes(b *strings.Builder, notes []string, runs []*footprint.Run) {
-	lines := allNotes(notes, runs)
-	if len(lines) == 0 {
+// aligned puts cells of the same column under one another.
+func aligned(lines [][]string, right func(column int) bool) (out []string) {
+	widths := make([]int, len(lines[0]))
+	for _, line := range lines {
+		for n, text := range line {
+			widths[n] = max(widths[n], utf8.RuneCountInString(text))
+		}
+	}
+	for _, line := range lines {
+		cells := make([]string, len(line))
+		for n, text := range line {
+			cells[n] = padded(text, widths[n], right(n))
+		}
+		out = append(out, strings.TrimRight(strings.Join(cells, "  "), " "))
+	}
+	return out
+}
+
+func textNotes(b *strings.Builder, notes []string) {
+	if len(notes) == 0 {
 		return
 	}
 	b.WriteString("\nNotes\n")
-	for _, n := range lines {
+	for _, n := range notes {
 		fmt.Fprintf(b, "  %s\n", Inert(n))
 	}
-}
-
-// allNotes are the statement's notes and those of its runs, each once, with
-// the runs that it is about.
-func allNotes(notes []string, runs []*footprint.Run) []string {
-	lines := append([]string(nil), notes...)
-	about := map[string][]string{}
-	var order []string
-	for _, r := range runs {
-		for _, n := range r.Notes {
-			if about[n] == nil {
-				order = append(order, n)
-			}
-			about[n] = append(about[n], name(r))
-		}
-	}
-	for _, n := range order {
-		if names := about[n]; len(names) < len(runs) || len(runs) == 1 {
-			lines = append(lines, fmt.Sprintf("run %s: %s", strings.Join(names, "; "), n))
-			continue
-		}
-		lines = append(lines, "all runs: "+n)
-	}
-	return lines
-}
-
-// Runs writes the footprints of runs without any ruling.
-func Runs(w io.Writer, list []*footprint.Run, notes []string) error {
-	var b strings.Builder
-	for _, r := range list {
-		b.WriteString(oneRun(r))
-	}
-	for _, n := range notes {
-		fmt.Fprintf(&b, "%s\n", Inert(n))
-	}
-	fmt.Fprintf(&b, "%s\n", Caution)
-	_, err := io.WriteString(w, b.String())
-	return err
-}
-
-// oneRun is a run as a short list.
-func oneRun(r *footprint.Run) string {
-	t := runs([]*footprint.Run{r})
-	var b strings.Builder
-	tw := tabwriter.NewWriter(&b, 0, 0, 2, ' ', 0)
-	for n, c := range t.rows[0] {
-		if c.text != "-" {
-			fmt.Fprintf(tw, "%s\t%s\n", t.head[n], Inert(c.text))
-		}
-	}
-	for _, d := range r.Doubts {
-		fmt.Fprintf(tw, "unproven\t%s\n", Inert(d.Reason))
-	}
-	for _, n := range r.Notes {
-		fmt.Fprintf(tw, "note\t%s\n", Inert(n))
-	}
-	tw.Flush()
-	return b.String() + "\n"
 }

@@ -40,7 +40,7 @@ func Hold(base, head []Sample) (h Held, ok bool) {
 	perMachine := float64(operational.Value()) / float64(machine.Value()) // PUE x intensity
 	h.Base, h.Head = heldMean(base, perMachine), heldMean(head, perMachine)
 	h.Ratio = float64(h.Head)/float64(h.Base) - 1
-	return h, positive(float64(h.Base)) && positive(float64(h.Head)) && !math.IsInf(h.Ratio, 0)
+	return h, h.Base > 0 && h.Head > 0 && !math.IsInf(h.Ratio, 0)
 }
 
 // positive tells whether v is above zero and finite.

@@ -23,6 +23,12 @@ type Source interface {
 // time more often than runs.
 const MaxSpan = 2 * unit.Year
 
+// Numbers beyond these are mistakes too, and would not let sums stay finite.
+const (
+	most     = 1e24 // W, J and kWh
+	mostWork = 1e100
+)
+
 // Meter is what one meter of a part measured.
 type Meter struct {
 	Name     string
@@ -121,7 +127,8 @@ type weighing struct {
 	total  *meter   // nil if there are none
 	rated  float64
 	hash   *digest
-	late   int // number of the first line beyond MaxSpan
+
+	refused string // the first line that cannot be of the run, and why
 }
 
 func (w *weighing) take(l *record.Line) {
@@ -130,9 +137,9 @@ func (w *weighing) take(l *record.Line) {
 		w.open(l)
 		return
 	}
-	if p.beyond(l.At) {
-		if w.late == 0 {
-			w.late = l.No
+	if why := p.impossible(l); why != "" {
+		if w.refused == "" {
+			w.refused = fmt.Sprintf("%s:%d: %s", p.File, l.No, why)
 		}
 		return
 	}
@@ -154,10 +161,19 @@ func (w *weighing) take(l *record.Line) {
 	}
 }
 
-// beyond tells whether a time is too far from the open line to be of the run.
-// The difference is taken without a sign: it may be longer than a Duration.
-func (p *Part) beyond(at unit.Instant) bool {
-	return at < p.Open.At || uint64(at-p.Open.At) > uint64(MaxSpan)
+// impossible tells what is wrong with a line that cannot be of the run. The
+// difference of times is taken without a sign: it may be longer than a
+// Duration.
+func (p *Part) impossible(l *record.Line) string {
+	switch {
+	case l.At < p.Open.At || uint64(l.At-p.Open.At) > uint64(MaxSpan):
+		return fmt.Sprintf("a time before the record opens or more than %s after", MaxSpan)
+	case l.Power > most || l.Joules > most || l.Wrap > most || l.Used != nil && l.Used.Energy > most:
+		return "a reading beyond anything that can be measured"
+	case l.Work != nil && (l.Work.Done > mostWork || l.Work.Planned > mostWork || l.Work.Done > 0 && l.Work.Done < 1/mostWork):
+		return "an amount of work beyond anything that can be done"
+	}
+	return ""
 }
 
 func (w *weighing) open(l *record.Line) {
@@ -215,8 +231,8 @@ func (w *weighing) finish(names []string) {
 	if len(p.Meters) == 0 {
 		p.doubt(Doubt{Reason: "no energy: " + p.File + " has no power, energy or used lines"})
 	}
-	if w.late > 0 {
-		p.doubt(Doubt{Reason: fmt.Sprintf("%s:%d: a time before the record opens or more than %s after", p.File, w.late, MaxSpan), Refutes: true})
+	if w.refused != "" {
+		p.doubt(Doubt{Reason: w.refused, Refutes: true})
 	}
 	w.settle()
 	w.plausible()
@@ -224,7 +240,7 @@ func (w *weighing) finish(names []string) {
 
 // close ends one meter and fills its gaps.
 func (w *weighing) close(name string, m *meter) {
-	if m == nil { // every line of it was beyond MaxSpan
+	if m == nil { // every line of it was refused
 		return
 	}
 	p := w.part

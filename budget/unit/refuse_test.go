@@ -76,6 +76,12 @@ func TestMessages(t *testing.T) {
 	}
 }
 
+// TestLongNumber: a number of a million digits is refused, not computed with.
+func TestLongNumber(t *testing.T) {
+	_, err := ParseMass("1." + strings.Repeat("0", 1_000_001) + " g")
+	assert.ErrorContains(t, err, "the number is too long")
+}
+
 // TestOtherGases: only CO2 equivalents are taken; the warming potential of
 // another gas would have to be guessed, and a gas in a wrong place is no unit.
 func TestOtherGases(t *testing.T) {

@@ -111,22 +111,6 @@ func (s *scale) base() string {
 	return s.prints[i].symbol
 }
 
-// split cuts text into its number, unsigned and decimal, and what follows it.
-func split(text string) (number, rest string, err error) {
-	text = strings.TrimSpace(text)
-	end := numberEnd(text)
-	number, rest = text[:end], strings.TrimSpace(text[end:])
-	switch {
-	case strings.HasPrefix(text, "-"):
-		return "", "", errors.New("it is below zero")
-	case end == 0:
-		return "", "", errors.New("no number at the start")
-	case strings.HasPrefix(rest, ","):
-		return "", "", errors.New("a comma stands in the number")
-	}
-	return number, rest, nil
-}
-
 // times is number of this unit in base units, computed as decimals and rounded
 // once: "1.005 kg" is 1005 g and not the float below it, for exactly at a limit
 // is within it, whatever prefix the limit is written in.
@@ -138,9 +122,11 @@ func (st step) times(number string) (float64, error) {
 	if value == 0 { // or too small for a float; as a fraction it could fill the memory
 		return 0, nil
 	}
-	exact := decimal(number)
-	exact.Mul(exact, decimal(strconv.FormatFloat(st.size, 'g', -1, 64)))
-	exact.Quo(exact, decimal(strconv.FormatFloat(st.per, 'g', -1, 64)))
+	exact, ok := new(big.Rat).SetString(number)
+	if !ok { // more than a million digits
+		return 0, errors.New("the number is too long")
+	}
+	exact.Mul(exact, decimal(st.size)).Quo(exact, decimal(st.per))
 	value, _ = exact.Float64()
 	if math.IsInf(value, 0) {
 		return 0, errors.New("the number is too large")
@@ -148,59 +134,10 @@ func (st step) times(number string) (float64, error) {
 	return value, nil
 }
 
-// decimal reads a number that ParseFloat took.
-func decimal(number string) *big.Rat {
-	r, ok := new(big.Rat).SetString(number)
-	if !ok {
-		panic("unit: not a decimal number: " + number)
-	}
+// decimal is a size as it is written above, not as the float beside it.
+func decimal(size float64) *big.Rat {
+	r, _ := new(big.Rat).SetString(strconv.FormatFloat(size, 'g', -1, 64))
 	return r
-}
-
-// numberEnd is the length of the unsigned decimal number that text starts
-// with, or 0. An exponent counts only when digits follow it, so that the unit
-// may start with e.
-func numberEnd(text string) int {
-	whole := digits(text)
-	end := whole
-	if strings.HasPrefix(text[end:], ".") {
-		fraction := digits(text[end+1:])
-		if whole+fraction == 0 {
-			return 0
-		}
-		end += 1 + fraction
-	}
-	if end == 0 {
-		return 0
-	}
-	if rest := text[end:]; len(rest) > 1 && (rest[0] == 'e' || rest[0] == 'E') {
-		sign := 1
-		if rest[1] == '+' || rest[1] == '-' {
-			sign = 2
-		}
-		if n := digits(rest[sign:]); n > 0 {
-			end += sign + n
-		}
-	}
-	return end
-}
-
-func digits(text string) int {
-	for i, c := range []byte(text) {
-		if c < '0' || c > '9' {
-			return i
-		}
-	}
-	return len(text)
-}
-
-// clip keeps a quotation of somebody's input short.
-func clip(text string) string {
-	const most = 40
-	if r := []rune(text); len(r) > most {
-		return string(r[:most]) + "..."
-	}
-	return text
 }
 
 // round rounds value to the given number of significant decimal figures.

@@ -8,6 +8,8 @@ import (
 	"runtime/debug"
 	"strings"
 	"time"
+
+	"budgetcheck/report"
 )
 
 // The exit statuses of every command.
@@ -21,6 +23,7 @@ const (
 type streams struct {
 	out, err io.Writer
 	clock    func() time.Time
+	getenv   func(string) string
 }
 
 // command is one thing that budgetcheck does. It returns the exit status; an
@@ -36,6 +39,7 @@ func commands() []command {
 		{"weigh", "weigh records, without any rule", weigh},
 		{"vet", "check policy, records and series", vet},
 		{"init", "write a starter policy and workflow", initialise},
+		{"action", "be the step of action.yml", action},
 		{"version", "print the version", version},
 	}
 }
@@ -67,10 +71,17 @@ func (c command) status(args []string, s streams) int {
 	case errors.Is(err, flag.ErrHelp):
 		return exitDone
 	case err != nil:
-		fmt.Fprintf(s.err, "budgetcheck %s: %v\n", c.name, err)
+		tell(s.err, strings.Split(fmt.Sprintf("budgetcheck %s: %v", c.name, err), "\n")...)
 		return exitCannot
 	}
 	return status
+}
+
+// tell writes messages. What policies, records and file names say is in them.
+func tell(w io.Writer, lines ...string) {
+	for _, line := range lines {
+		fmt.Fprintln(w, report.Inert(line))
+	}
 }
 
 func usage(w io.Writer) {
@@ -81,7 +92,14 @@ func usage(w io.Writer) {
 	fmt.Fprint(w, "\nbudgetcheck COMMAND -h lists its flags. Exit status: 0 done, gate open; 1 a finding, gate closed; 2 could not.\n")
 }
 
-func version(_ []string, s streams) (int, error) {
+func version(args []string, s streams) (int, error) {
+	var o options
+	if err := o.parse("version", args, s); err != nil {
+		return 0, err
+	}
+	if err := o.noRest(); err != nil {
+		return 0, err
+	}
 	info, ok := debug.ReadBuildInfo()
 	if !ok {
 		return 0, errors.New("the binary carries no build information; build it with go build")

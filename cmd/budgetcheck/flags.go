@@ -4,6 +4,7 @@ import (
 	"errors"
 	"flag"
 	"fmt"
+	"os"
 	"strings"
 	"time"
 
@@ -15,13 +16,13 @@ const policyName = "budgetcheck.toml"
 
 // options are the flags that commands share by name.
 type options struct {
-	policy, head, base, grid list
-	branch                   string
-	pull                     int
-	commit, baseCommit       string
-	now                      string
-	out                      string
-	json                     bool
+	policy, head, base, grid, job list
+	branch                        string
+	pull                          int
+	commit, baseCommit            string
+	now                           string
+	out                           string
+	json                          bool
 
 	rest []string // arguments after the flags
 }
@@ -40,6 +41,19 @@ func (o *options) parse(name string, args []string, s streams, flags ...string) 
 		return err
 	case err != nil:
 		return fmt.Errorf("%w; see budgetcheck %s -h", err, name)
+	case o.pull < 0:
+		return fmt.Errorf("-pull is %d; write the number of the pull request", o.pull)
+	}
+	return o.noLateFlag()
+}
+
+// noLateFlag refuses a flag after an argument: the flag package stops at the
+// first argument, and the rest would pass for names of files.
+func (o *options) noLateFlag() error {
+	for _, arg := range o.rest {
+		if _, err := os.Stat(arg); strings.HasPrefix(arg, "-") && err != nil {
+			return fmt.Errorf("%s stands after %s; write flags first", arg, o.rest[0])
+		}
 	}
 	return nil
 }
@@ -52,6 +66,7 @@ func (o *options) define(set *flag.FlagSet, flags []string) {
 		"policy": {&o.policy, "policy `file` (default " + policyName + "); may be repeated, tables add up"},
 		"head":   {&o.head, "`glob` of the records to judge; may be repeated"},
 		"base":   {&o.base, "`glob` of the records to compare with; may be repeated"},
+		"job":    {&o.job, "`glob` of the jobs to judge (default: all); may be repeated"},
 		"grid":   {&o.grid, "`glob` of series files, besides those of the policy; may be repeated"},
 	}
 	texts := map[string]struct {
@@ -59,8 +74,8 @@ func (o *options) define(set *flag.FlagSet, flags []string) {
 		does string
 	}{
 		"branch":      {&o.branch, "`name` of the branch; with -pull the target branch"},
-		"commit":      {&o.commit, "`id` of the head commit"},
-		"base-commit": {&o.baseCommit, "`id` of the base commit"},
+		"commit":      {&o.commit, "`id` of the head commit, in the clone that the working folder is in; head runs must stand for it"},
+		"base-commit": {&o.baseCommit, "`id` of the commit to merge into; jobs whose inputs are those of the merge base are not asked for runs"},
 		"now":         {&o.now, "RFC 3339 `time` to judge at, for repeatable output (default: the clock)"},
 		"out":         {&o.out, "`folder` to write to"},
 	}
@@ -81,7 +96,7 @@ func (o *options) define(set *flag.FlagSet, flags []string) {
 // noRest refuses arguments that no flag took.
 func (o *options) noRest() error {
 	if len(o.rest) > 0 {
-		return fmt.Errorf("unexpected argument %q; globs are given by flags, and in quotation marks so that the shell leaves them alone", o.rest[0])
+		return fmt.Errorf("unexpected argument %q; only flags are expected, and globs in quotation marks, so that the shell leaves them alone", o.rest[0])
 	}
 	return nil
 }

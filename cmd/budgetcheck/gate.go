@@ -16,7 +16,7 @@ import (
 // gate judges head runs and writes the statement.
 func gate(args []string, s streams) (int, error) {
 	var o options
-	err := o.parse("gate", args, s, "policy", "head", "base", "grid", "branch", "pull", "commit", "base-commit", "now", "out", "json")
+	err := o.parse("gate", args, s, "policy", "head", "base", "grid", "job", "branch", "pull", "commit", "base-commit", "now", "out", "json")
 	if err != nil {
 		return 0, err
 	}
@@ -52,53 +52,60 @@ func (o *options) judge(s streams) (*budget.Statement, error) {
 	if err := l.readSeries(o); err != nil {
 		return nil, err
 	}
-	head := l.weighAll(o.head, "-head", nil)
+	head, err := l.weighAll(o.head, "-head", nil)
+	if err != nil {
+		return nil, err
+	}
 	unread := l.unread
-	base := l.weighAll(o.base, "-base", nil)
+	base, err := l.weighAll(o.base, "-base", nil)
+	if err != nil {
+		return nil, err
+	}
 	for _, f := range l.unread[len(unread):] {
 		l.notes = append(l.notes, f.String())
 	}
+	l.notes = append(l.notes, l.missing...) // which rulings tell whether anything is due
 	tellFindings(s.err, l, head, base)
+	commits := l.commits(o, head, base)
 	return policy.Judge(budget.Case{
-		Branch: o.branch, Pull: o.pull, HeadCommit: o.commit, BaseCommit: o.baseCommit, Now: now,
+		Branch: o.branch, Pull: o.pull, Jobs: o.job, Commits: commits, HeadCommit: o.commit, BaseCommit: o.baseCommit, Now: now,
 		PolicySource: strings.Join(policy.Files, " and "),
 		Head:         head, Base: base, Unread: unread, Notes: l.notes,
 	}), nil
 }
 
-// tellFindings lists what is wrong in series and records, file by file.
-func tellFindings(w io.Writer, l *loader, sides ...[]*footprint.Part) (any bool) {
-	tell := func(lines []string) {
-		for _, line := range lines {
-			any = true
-			fmt.Fprintln(w, report.Inert(line))
-		}
-	}
+// tellFindings lists what is wrong in series and records, file by file. It
+// tells whether anything is.
+func tellFindings(w io.Writer, l *loader, sides ...[]*footprint.Part) bool {
+	var lines []string
 	for _, f := range l.series {
-		tell(f.Findings.Lines())
+		lines = append(lines, f.Findings.Lines()...)
 	}
 	for _, f := range l.unread {
-		tell([]string{f.String()})
+		lines = append(lines, f.String())
 	}
 	for _, parts := range sides {
 		for _, p := range parts {
-			tell(p.Findings.Lines())
+			lines = append(lines, p.Findings.Lines()...)
 		}
 	}
-	return any
+	tell(w, lines...)
+	return len(lines) > 0
 }
 
 // write prints the statement and, with -out, writes it in every form.
 func (o *options) write(w io.Writer, s *budget.Statement) error {
-	if o.out != "" {
-		if err := writeForms(o.out, s); err != nil {
-			return fmt.Errorf("the statement cannot be written: %w", err)
-		}
-	}
+	form := report.Text
 	if o.json {
-		return report.JSON(w, s)
+		form = report.JSON
 	}
-	return report.Text(w, s)
+	if err := form(w, s); err != nil || o.out == "" {
+		return err
+	}
+	if err := writeForms(o.out, s); err != nil {
+		return fmt.Errorf("the statement cannot be written: %w", err)
+	}
+	return nil
 }
 
 func writeForms(dir string, s *budget.Statement) error {

@@ -8,9 +8,11 @@ import (
 	"io"
 	"os"
 	"path/filepath"
+	"slices"
 	"text/template"
 
 	"budgetcheck/budget"
+	"budgetcheck/budget/inputs"
 )
 
 //go:embed starter
@@ -30,13 +32,42 @@ func initialise(args []string, s streams) (int, error) {
 	if err := l.readSeries(&o); err != nil {
 		return 0, err
 	}
-	parts := l.weighAll(o.head, "-head", nil)
-	if wrong := tellFindings(s.err, l, parts); wrong || len(o.head) > 0 && len(parts) == 0 {
-		tellNotes(s.err, l.notes)
+	parts, err := l.weighAll(o.head, "-head", nil)
+	if err != nil {
+		return 0, err
+	}
+	wrong := tellFindings(s.err, l, parts)
+	tell(s.err, slices.Concat(l.missing, l.notes)...)
+	if wrong || len(l.missing) > 0 {
 		return 0, errors.New("nothing was written: mend or leave out what is named above")
 	}
+	series, err := seenFrom(o.out, o.grid)
+	if err != nil {
+		return 0, err
+	}
 	runs, _ := l.policy.Runs(parts)
-	return exitDone, o.start(s.out, budget.NewStarter(runs, o.grid))
+	return exitDone, o.start(s.out, budget.NewStarter(runs, series))
+}
+
+// seenFrom rewrites globs so that they hold in a policy that stands in dir.
+func seenFrom(dir string, globs []string) (seen []string, err error) {
+	if dir, err = filepath.Abs(dir); err != nil {
+		return nil, err
+	}
+	here, err := os.Getwd()
+	if err != nil {
+		return nil, err
+	}
+	for _, g := range globs {
+		if !filepath.IsAbs(g) {
+			// Both folders are written as globs, for the rest is one.
+			if g, err = filepath.Rel(escape(dir), filepath.Join(escape(here), g)); err != nil {
+				return nil, err
+			}
+		}
+		seen = append(seen, filepath.ToSlash(g))
+	}
+	return seen, nil
 }
 
 // start writes the files; it never overwrites one.
@@ -57,13 +88,13 @@ func (o *options) start(w io.Writer, st budget.Starter) error {
 		fmt.Fprintf(w, "wrote %s\n", filepath.Join(o.out, f.path))
 	}
 	for _, line := range st.Unknown {
-		fmt.Fprintf(w, "not known: %s\n", line)
+		tell(w, "not known: "+line)
 	}
 	return nil
 }
 
 func writeStarter(name, path string, st budget.Starter) error {
-	t, err := template.ParseFS(starter, name)
+	t, err := template.New(filepath.Base(name)).Funcs(template.FuncMap{"literal": inputs.Literal}).ParseFS(starter, name)
 	if err != nil {
 		return err
 	}

@@ -3,6 +3,7 @@ package main
 import (
 	"errors"
 	"fmt"
+	"io/fs"
 	"os"
 	"path/filepath"
 	"slices"
@@ -14,17 +15,21 @@ import (
 	"budgetcheck/budget/finding"
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/grid"
+	"budgetcheck/budget/inputs"
 	"budgetcheck/budget/record"
+	"budgetcheck/report"
 )
 
 // loader opens the files that a command names. Everything it reads is judged
 // elsewhere; it collects what could not be read.
 type loader struct {
-	policy *budget.Policy
-	series []*grid.File
-	set    *grid.Set
-	unread []finding.Finding // head files that could not be read
-	notes  []string
+	policy  *budget.Policy
+	noLinks bool // hostile records: a link could lead to any file of the machine
+	series  []*grid.File
+	set     *grid.Set
+	unread  []finding.Finding // what could not be read at all
+	missing []string          // globs that match nothing
+	notes   []string
 }
 
 // policies reads the policy files. Findings are an error: nothing must be
@@ -57,7 +62,7 @@ func (o *options) mustPolicy() (*budget.Policy, error) {
 	if len(found) > 0 {
 		lines := []string{"the policy cannot be used:"}
 		for _, f := range found {
-			lines = append(lines, f.String())
+			lines = append(lines, report.Inert(f.String())) // each is a line
 		}
 		return nil, errors.New(strings.Join(lines, "\n"))
 	}
@@ -67,16 +72,27 @@ func (o *options) mustPolicy() (*budget.Policy, error) {
 // readSeries reads the series of the policy, relative to its file, and those
 // of the flags, which come later and so win where they differ.
 func (l *loader) readSeries(o *options) error {
-	globs := slices.Clone(o.grid)
+	var own []string
 	if len(o.policy) > 0 {
-		dir := filepath.Dir(o.policy[0])
-		var own []string
+		dir := escape(filepath.Dir(o.policy[0]))
 		for _, g := range l.policy.Grid.Series {
-			own = append(own, filepath.Join(escape(dir), filepath.FromSlash(g)))
+			if g = filepath.FromSlash(g); !filepath.IsAbs(g) {
+				g = filepath.Join(dir, g)
+			}
+			own = append(own, g)
 		}
-		globs = append(own, globs...)
 	}
-	for _, path := range l.expand(globs, "series") {
+	return l.finishSeries(append(own, o.grid...))
+}
+
+// finishSeries reads series files after those that the loader has, and lays
+// them over one another.
+func (l *loader) finishSeries(globs []string) error {
+	paths, err := l.expand(globs, "series")
+	if err != nil {
+		return err
+	}
+	for _, path := range paths {
 		f, err := os.Open(path)
 		if err != nil {
 			return fmt.Errorf("the series cannot be read: %w", err)
@@ -98,19 +114,21 @@ func escape(dir string) string {
 	if filepath.Separator == '\\' {
 		return dir // there a backslash separates and cannot escape
 	}
-	return strings.NewReplacer(`\`, `\\`, "*", `\*`, "?", `\?`, "[", `\[`, "{", `\{`).Replace(dir)
+	return inputs.Literal(dir)
 }
 
 // expand lists the files that the globs match, each once, in order. A glob
-// that matches nothing is noted: whoever wrote it expected something.
-func (l *loader) expand(globs []string, what string) (paths []string) {
+// that matches nothing is missing: whoever wrote it expected something.
+func (l *loader) expand(globs []string, what string) (paths []string, err error) {
 	for _, g := range globs {
-		found, err := matches(g)
+		found, err := l.matches(g)
 		switch {
+		case errors.Is(err, doublestar.ErrBadPattern):
+			return nil, fmt.Errorf("%q is not a glob; mend its brackets, or put a backslash before each that is meant as written", g)
 		case err != nil:
-			l.notes = append(l.notes, fmt.Sprintf("the glob %s of %s cannot be used (%v)", g, what, err))
+			l.unread = append(l.unread, finding.Finding{What: fmt.Sprintf("the folders of %s (%s) cannot be searched: %v", g, what, err)})
 		case len(found) == 0:
-			l.notes = append(l.notes, fmt.Sprintf("no file matches %s of %s", g, what))
+			l.missing = append(l.missing, nothing(g, what))
 		}
 		for _, path := range found {
 			if !slices.Contains(paths, path) {
@@ -118,34 +136,58 @@ func (l *loader) expand(globs []string, what string) (paths []string) {
 			}
 		}
 	}
-	return paths
+	return paths, nil
+}
+
+func nothing(glob, what string) string {
+	if info, err := os.Stat(glob); err == nil && info.IsDir() {
+		return fmt.Sprintf("%s is a folder (%s); write %s for the files in it", glob, what, filepath.Join(glob, "**"))
+	}
+	return fmt.Sprintf("no file matches %s (%s)", glob, what)
 }
 
 // matches are the files of one glob, sorted. A name that is a file is meant
 // as written.
-func matches(glob string) ([]string, error) {
+func (l *loader) matches(glob string) ([]string, error) {
 	if info, err := os.Stat(glob); err == nil && !info.IsDir() {
 		return []string{glob}, nil
 	}
-	found, err := doublestar.FilepathGlob(glob, doublestar.WithFilesOnly(), doublestar.WithFailOnIOErrors())
+	options := []doublestar.GlobOption{doublestar.WithFilesOnly(), doublestar.WithFailOnIOErrors()}
+	if l.noLinks {
+		options = append(options, doublestar.WithNoFollow())
+	}
+	found, err := doublestar.FilepathGlob(glob, options...)
 	slices.Sort(found)
 	return found, err
 }
 
 // weighAll weighs the records that the globs match.
-func (l *loader) weighAll(globs []string, what string, see func(*record.Reader, *footprint.Part)) (parts []*footprint.Part) {
-	for _, path := range l.expand(globs, what) {
+func (l *loader) weighAll(globs []string, what string, see func(*record.Reader, *footprint.Part)) (parts []*footprint.Part, err error) {
+	paths, err := l.expand(globs, what)
+	for _, path := range paths {
 		part, err := l.weighFile(path, see)
 		if err != nil {
-			l.unread = append(l.unread, finding.Finding{File: path, What: "the record cannot be read (" + err.Error() + ")", Do: "give the whole file"})
+			l.unread = append(l.unread, finding.Finding{File: path, What: without(err, path)})
 			continue
 		}
 		parts = append(parts, part)
 	}
-	return parts
+	return parts, err
+}
+
+// without is the error without the file's name, which the finding says already.
+func without(err error, path string) string {
+	var failed *fs.PathError
+	if errors.As(err, &failed) {
+		return "the file cannot be read: " + failed.Err.Error()
+	}
+	return strings.TrimPrefix(err.Error(), path+": ")
 }
 
 func (l *loader) weighFile(path string, see func(*record.Reader, *footprint.Part)) (*footprint.Part, error) {
+	if info, err := os.Lstat(path); l.noLinks && err == nil && !info.Mode().IsRegular() {
+		return nil, errors.New("it is a link or no regular file")
+	}
 	f, err := os.Open(path)
 	if err != nil {
 		return nil, err

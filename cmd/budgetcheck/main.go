@@ -8,6 +8,6 @@ import (
 )
 
 func main() {
-	s := streams{out: os.Stdout, err: os.Stderr, clock: time.Now}
+	s := streams{out: os.Stdout, err: os.Stderr, clock: time.Now, getenv: os.Getenv}
 	os.Exit(run(os.Args[1:], s))
 }

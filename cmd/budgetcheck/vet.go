@@ -9,7 +9,6 @@ import (
 	"budgetcheck/budget"
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/record"
-	"budgetcheck/report"
 )
 
 // vet checks a policy, records and series by themselves, without a verdict.
@@ -30,7 +29,9 @@ func vet(args []string, s streams) (int, error) {
 	for _, f := range l.series {
 		lines = append(lines, f.Findings.Lines()...)
 	}
-	l.weighAll(records, "records", func(r *record.Reader, p *footprint.Part) {
+	read := 0
+	_, err = l.weighAll(records, "records", func(r *record.Reader, p *footprint.Part) {
+		read++
 		lines = append(lines, r.Findings().Lines()...)
 		lines = append(lines, r.Unknown().Lines()...)
 		lines = append(lines, r.Notes()...)
@@ -38,11 +39,15 @@ func vet(args []string, s streams) (int, error) {
 			lines = append(lines, d.Reason)
 		}
 	})
+	if err != nil {
+		return 0, err
+	}
 	for _, f := range l.unread {
 		lines = append(lines, f.String())
 	}
+	lines = append(lines, l.missing...)
 	lines = append(lines, l.notes...)
-	return tellVetted(s.out, lines, len(policy.Files), len(l.series), len(records))
+	return tellVetted(s.out, lines, len(policy.Files), len(l.series), read)
 }
 
 // vetPolicy reads the policy for its findings. One that is not there is fine
@@ -71,18 +76,16 @@ func (o *options) vetPolicy(otherwise bool) (*budget.Policy, []string, error) {
 }
 
 func tellVetted(w io.Writer, lines []string, policies, series, records int) (int, error) {
-	for _, line := range lines {
-		fmt.Fprintln(w, report.Inert(line))
-	}
-	if len(lines) > 0 {
+	if tell(w, lines...); len(lines) > 0 {
 		return exitFinding, nil
 	}
-	_, err := fmt.Fprintf(w, "nothing found in %d policy files, %d series files and the records of %d globs\n", policies, series, records)
+	_, err := fmt.Fprintf(w, "nothing found in %s, %s and %s\n", count(policies, "policy file"), count(series, "series file"), count(records, "record"))
 	return exitDone, err
 }
 
-func tellNotes(w io.Writer, notes []string) {
-	for _, n := range notes {
-		fmt.Fprintln(w, report.Inert(n))
+func count(n int, what string) string {
+	if n != 1 {
+		what += "s"
 	}
+	return fmt.Sprintf("%d %s", n, what)
 }

@@ -3,8 +3,10 @@ package main
 import (
 	"errors"
 	"os"
+	"slices"
 
 	"budgetcheck/budget"
+	"budgetcheck/budget/footprint"
 	"budgetcheck/report"
 )
 
@@ -28,25 +30,19 @@ func weigh(args []string, s streams) (int, error) {
 	if err := l.readSeries(&o); err != nil {
 		return 0, err
 	}
-	parts := l.weighAll(o.head, "-head", nil)
-	wrong := tellFindings(s.err, l, parts)
-	runs, stray := l.policy.Runs(parts)
-	for _, r := range runs {
-		wrong = wrong || len(r.Doubts) > 0
-		for _, d := range r.Doubts {
-			r.Notes = append(r.Notes, "unproven: "+d.Reason)
-		}
-		r.Doubts = nil // told as notes, in JSON too
-	}
-	if len(runs) == 0 || len(stray) > 0 {
-		wrong = true
+	parts, err := l.weighAll(o.head, "records", nil)
+	if err != nil {
+		return 0, err
 	}
 	status := exitDone
-	if wrong {
+	runs, stray := l.policy.Runs(parts)
+	doubted := slices.ContainsFunc(runs, func(r *footprint.Run) bool { return len(r.Doubts) > 0 })
+	wrong := tellFindings(s.err, l, parts)
+	if tell(s.err, l.missing...); wrong || doubted || len(stray)+len(l.missing) > 0 {
 		status = exitFinding
 	}
 	if o.json {
-		tellNotes(s.err, l.notes)
+		tell(s.err, l.notes...)
 		return status, report.RunsJSON(s.out, runs)
 	}
 	return status, report.Runs(s.out, runs, l.notes)

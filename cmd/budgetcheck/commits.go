@@ -1,0 +1,72 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"slices"
+
+	"budgetcheck/budget"
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/inputs"
+)
+
+// mostCommits bounds how many commits that records name are looked up.
+const mostCommits = 50
+
+// readCommits lists the files of the head commit, of the merge base where
+// there is one, and of the commits that records name. A commit that is named
+// and not there is left out: the run that names it is then unproven.
+func readCommits(ctx context.Context, repo inputs.Repository, head, mergeBase string, parts ...[]*footprint.Part) (*budget.Commits, error) {
+	c := &budget.Commits{Named: map[string]inputs.Tree{}}
+	var err error
+	if c.Head, err = repo.Tree(ctx, head); err != nil {
+		return nil, fmt.Errorf("the head commit cannot be read: %w", err)
+	}
+	if mergeBase != "" {
+		if c.Base, err = repo.Tree(ctx, mergeBase); err != nil {
+			return nil, fmt.Errorf("the merge base cannot be read: %w", err)
+		}
+	}
+	for _, p := range slices.Concat(parts...) {
+		name := p.Open.Commit
+		if _, known := c.Named[name]; known || name == "" || name == head || len(c.Named) == mostCommits {
+			continue
+		}
+		if t, err := repo.Tree(ctx, name); err == nil {
+			c.Named[name] = t
+		}
+	}
+	return c, nil
+}
+
+// commits reads the commits that the flags name from the local clone. Without
+// one, runs stand for the head commit only if they ran on it; notes say so.
+func (l *loader) commits(o *options, head, base []*footprint.Part) *budget.Commits {
+	if o.commit == "" {
+		return nil
+	}
+	c, err := l.clone(o, head, base)
+	if err != nil {
+		l.notes = append(l.notes, fmt.Sprintf("inputs are not compared, head runs must name the head commit itself: %v", err))
+		return nil
+	}
+	return c
+}
+
+func (l *loader) clone(o *options, head, base []*footprint.Part) (*budget.Commits, error) {
+	ctx := context.Background()
+	git, err := inputs.OpenGit(ctx, ".")
+	if err != nil {
+		return nil, err
+	}
+	if l.policy.Prefix, err = git.Prefix(ctx); err != nil {
+		return nil, err
+	}
+	mergeBase := ""
+	if o.baseCommit != "" {
+		if _, mergeBase, err = git.Meet(ctx, o.baseCommit, o.commit); err != nil {
+			return nil, err
+		}
+	}
+	return readCommits(ctx, git, o.commit, mergeBase, head, base)
+}
