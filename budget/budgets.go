@@ -116,21 +116,22 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 	if known {
 		j.settle(&r, b, a)
 	}
-	if known && len(run.Doubts) == 0 {
+	doubts := b.Limit.doubts(run)
+	if known && len(doubts) == 0 {
 		if r.State == Unproven {
 			r.Reason = "above the limit, but by less than its expanded uncertainty"
 		}
 		return r
 	}
 	proven := b.Limit.proven(run, j.policy.Method().Uncertainty)
-	if !run.Refuted() && j.state(b, proven) == Over {
+	if b.Limit.provable(run) && j.state(b, proven) == Over {
 		j.settle(&r, b, proven)
 		r.Reason = "the measured, priced part alone passes the limit"
 		return r
 	}
 	r.State, r.Reason, r.Conformance = Unproven, "the evidence is in doubt", nil
-	if len(run.Doubts) > 0 {
-		r.Reason, r.Missing = run.Doubts[0].Reason, onlyMissing(run.Doubts)
+	if len(doubts) > 0 {
+		r.Reason, r.Missing = doubts[0].Reason, onlyMissing(doubts)
 	}
 	return r
 }

@@ -2,6 +2,7 @@ package budget
 
 import (
 	"fmt"
+	"slices"
 
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/unit"
@@ -67,6 +68,22 @@ func (l Limit) of(r *footprint.Run, d footprint.Declared) (a amount, known bool)
 		return a, false
 	}
 	return l.perWork(a, r), true
+}
+
+// doubts are the doubts about the run that concern the limit: an energy does
+// not depend on its price.
+func (l Limit) doubts(r *footprint.Run) []footprint.Doubt {
+	if l.Energy == nil {
+		return r.Doubts
+	}
+	return slices.DeleteFunc(slices.Clone(r.Doubts), func(d footprint.Doubt) bool { return d.Price })
+}
+
+// provable tells whether what is proven to be spent is a lower bound of the
+// figure. It is none of a rate while work is still to come.
+func (l Limit) provable(r *footprint.Run) bool {
+	unfinished := r.Pilot || slices.ContainsFunc(r.Doubts, func(d footprint.Doubt) bool { return d.Missing })
+	return !r.Refuted() && !(l.Rate != nil && unfinished)
 }
 
 // proven is what the run's measured, priced part alone comes to. Its
