@@ -3,10 +3,39 @@ package budget
 import (
 	"fmt"
 	"slices"
+	"strings"
 
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/unit"
 )
+
+// Set parses text like "40 kg", "12 kWh" or "1.2 g per 1000 step".
+func (l *Limit) Set(text string) error {
+	if strings.Contains(text, " per ") {
+		l.Rate = new(unit.Rate)
+		return l.Rate.Set(text)
+	}
+	if e, err := unit.ParseEnergy(text); err == nil {
+		l.Energy = &e
+		return nil
+	}
+	m, err := unit.ParseMass(text)
+	if err != nil {
+		return fmt.Errorf("%w; a limit may also be an energy, like %q, or a rate, like %q", err, "12 kWh", "1.2 g per 1000 step")
+	}
+	l.Mass = &m
+	return nil
+}
+
+func (l Limit) String() string {
+	switch {
+	case l.Mass != nil:
+		return l.Mass.String()
+	case l.Energy != nil:
+		return l.Energy.String()
+	}
+	return l.Rate.String()
+}
 
 // base is the limit as it is judged: in g, in kWh, or in g for as many
 // functional units as it names. Brought to one unit it would be rounded, and

@@ -129,6 +129,8 @@ func (s *standing) examine(r *footprint.Run, j *Job) {
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s does not say with one voice on which commit it ran; write commit on the open line", r.Run)})
 	case s.commits == nil:
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, not the head commit, and there is no repository at hand to compare their inputs", r.Run, commit)})
+	case !inputs.FullID(commit):
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s names its commit %s; only a full id always means the same commit", r.Run, commit)})
 	case s.inputs(j, atHead, s.commits.Head) == "":
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s ran on commit %s, not the head commit, of which no file matches the paths of job %s", r.Run, commit, j.Name)})
 	case r.Inputs == "":

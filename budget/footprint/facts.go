@@ -75,12 +75,13 @@ func (f Facts) pricer(m Method) (p grid.Pricer) {
 	return p
 }
 
-// reservation is the share of the machine that the part holds: RR / ToR.
+// reservation is the share of the machine that the part holds: RR / ToR. It
+// is no more than all, so that a false claim proves no more than that.
 func (f Facts) reservation(reserved float64) float64 {
 	if f.Machine == nil || reserved == 0 {
 		return 1
 	}
-	return reserved / f.Machine.Units
+	return min(reserved/f.Machine.Units, 1)
 }
 
 // Doubt is a reason why a run's evidence does not carry a ruling.
@@ -92,6 +93,8 @@ type Doubt struct {
 	// Refutes: the measured energy itself is in question, so that it does not
 	// prove a limit passed.
 	Refutes bool
+	// Price: only the intensity is in question; energy figures stand.
+	Price bool
 	// Missing: a record that is still to come would settle the doubt.
 	Missing bool
 }

@@ -2,6 +2,7 @@ package footprint_test
 
 import (
 	"encoding/json"
+	"strings"
 	"testing"
 
 	"github.com/stretchr/testify/assert"
@@ -23,10 +24,12 @@ func FuzzWeigh(f *testing.F) {
 		opens + `{"k":"used","from":"2031-03-04T02:00:00Z","to":"2031-03-04T02:00:00.000000001Z","kwh":1e308,"how":"measured"}` + "\n",
 		opens + `{"k":"power","at":"2031-03-04T02:00:00Z","meter":"a","w":1}` + "\n" + `{"k":"work","at":"2031-03-04T02:01:00Z","unit":"step","done":5e-324,"planned":1e308}` + "\n",
 		opens + `{"k":"power","at":"2031-03-04T02:00:00Z","meter":"a","w":5e-324}` + "\n" + `{"k":"close","at":"2031-03-04T02:01:00Z","outcome":"ok"}` + "\n",
+		strings.Replace(opens, `"quad"`, `"quad","reserved":1e308`, 1) + `{"k":"power","at":"2031-03-04T02:01:00Z","meter":"a","w":1}` + "\n",
 	} {
 		f.Add([]byte(seed))
 	}
 	facts := oldMachine()
+	facts.Machine.Meters = 4
 	facts.Machine.Rated, facts.Machine.Idle, facts.Site.Market = ptr(unit.Power(2800)), ptr(unit.Power(240)), ptr(unit.Intensity(305))
 	m := certain(declared)
 	f.Fuzz(func(t *testing.T, text []byte) {
@@ -38,6 +41,8 @@ func FuzzWeigh(f *testing.F) {
 		r := footprint.Combine([]*footprint.Part{p, p}, m)
 		_, err := json.Marshal(r)
 		require.NoError(t, err, "no figure is infinite")
+		_, err = json.Marshal(r.Doubts)
+		require.NoError(t, err, "nor what a doubt is about")
 		for _, v := range []*unit.Energy{r.Measured, r.MachineKWh, r.Facility, &r.Proven.Facility} {
 			assert.True(t, v == nil || *v >= 0)
 		}

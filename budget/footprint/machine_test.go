@@ -49,10 +49,13 @@ func TestIdleIsOfTheMean(t *testing.T) {
 	assert.Empty(t, r.Doubts)
 }
 
-// TestReservedAboveUnits: a part cannot hold more than there is.
+// TestReservedAboveUnits: a part cannot hold more than there is. Who claims so
+// is charged with the whole machine.
 func TestReservedAboveUnits(t *testing.T) {
+	f := oldMachine()
+	f.Machine.Unmetered = ptr(unit.Power(320))
 	write := func(units float64) *footprint.Run {
-		return open(t, reserved(units)).powers(0, hour, 60, "m", 100).close(hour).run(plain(flat(400)), method)
+		return open(t, reserved(units)).powers(0, hour, 60, "m", 100).close(hour).run(f, method)
 	}
 	assert.Empty(t, write(4).Doubts)
 	r := write(4.5)
@@ -60,6 +63,9 @@ func TestReservedAboveUnits(t *testing.T) {
 	assert.Contains(t, r.Doubts[0].Reason, "4.5 of the 4 units of machine quad")
 	assert.InDelta(t, 4.5, r.Doubts[0].Observed, 0)
 	assert.InDelta(t, 4, r.Doubts[0].Limit, 0)
+	for _, units := range []float64{4.5, 1e308} {
+		assert.InEpsilon(t, value(t, write(4).Total), value(t, write(units).Total), 1e-12)
+	}
 }
 
 // TestUnmetered: what the meters do not see can be declared as a power instead

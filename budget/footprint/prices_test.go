@@ -109,6 +109,21 @@ func TestAnnualWithoutSeries(t *testing.T) {
 	assert.Contains(t, r.Doubts[0].Reason, "no average series for zone [NORTH]")
 }
 
+// TestZonesOfDoubt: a doubt about several zones names each once, in order,
+// whatever the order of the parts.
+func TestZonesOfDoubt(t *testing.T) {
+	var parts []*footprint.Part
+	for _, zone := range []string{"SOUTH", "NORTH", "SOUTH"} {
+		f := plain(nil)
+		f.Site.Zone = zone
+		parts = append(parts, kilowatt(t, 1).weigh(f, method))
+	}
+	r := footprint.Combine(parts, method)
+	require.NotEmpty(t, r.Doubts)
+	assert.Contains(t, r.Doubts[len(r.Doubts)-1].Reason, "zone [NORTH SOUTH]")
+	assert.Empty(t, r.Zone)
+}
+
 // TestAnnualIsNotMarginal: the annual mean is an average factor and never
 // stands in for a marginal one, neither for a series nor in its holes.
 func TestAnnualIsNotMarginal(t *testing.T) {

@@ -209,7 +209,12 @@ func (r *Run) outcome() {
 // whole checks that all parts are there and tell of one run.
 func (r *Run) whole() {
 	first := r.Pieces[0]
-	if have, want := len(r.Pieces), first.Open.Parts; have < want {
+	have, want := len(r.Pieces), first.Open.Parts
+	if have > max(want, 1) {
+		r.Doubt(Doubt{Reason: fmt.Sprintf("parts disagree: run %s has %d parts, more than the %d it says", r.Run, have, max(want, 1)),
+			Observed: float64(have), Limit: float64(max(want, 1)), Unit: "parts"})
+	}
+	if have < want {
 		r.Doubt(Doubt{Missing: true, Reason: fmt.Sprintf("part missing: run %s has %d of %d parts", r.Run, have, want),
 			Observed: float64(have), Limit: float64(want), Unit: "parts"})
 	}

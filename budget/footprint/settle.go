@@ -123,10 +123,11 @@ func (w *weighing) plausible() {
 // it is a whole number, so that the quotient is one where it ought to be.
 func (p *Part) metersWanted() float64 {
 	m := p.Facts.Machine
+	all := float64(m.Meters)
 	if p.Open.Reserved == 0 {
-		return float64(m.Meters)
+		return all
 	}
-	return float64(m.Meters) * p.Open.Reserved / m.Units
+	return min(all*p.Open.Reserved/m.Units, all)
 }
 
 // gapVariance adds the variance of a meter's gaps: each is uncertain by the

@@ -101,17 +101,17 @@ func holeLimit(m Method) unit.Share { return (1 - m.MinCoverage) * (1 + rounding
 // priceDoubts tells whether some hour has no price that may be used.
 func (r *Run) priceDoubts(m Method, annual, hole unit.Share, priced [4]bool) (doubted bool) {
 	if annual > 0 && !priced[grid.FromAnnual] {
-		r.Doubt(Doubt{Reason: fmt.Sprintf("no intensity: there is no %s series for %s and no annual mean that may be used", m.Factor, r.zones())})
+		r.Doubt(Doubt{Price: true, Reason: fmt.Sprintf("no intensity: there is no %s series for %s and no annual mean that may be used", m.Factor, r.zones())})
 		doubted = true
 	}
 	if hole > 0 && (!priced[grid.FromHole] || hole > holeLimit(m)) {
-		r.Doubt(Doubt{Reason: fmt.Sprintf("no intensity: %s of the energy falls into holes of the series for %s", hole, r.zones()),
+		r.Doubt(Doubt{Price: true, Reason: fmt.Sprintf("no intensity: %s of the energy falls into holes of the series for %s", hole, r.zones()),
 			Observed: float64(hole), Limit: float64(1 - m.MinCoverage), Unit: "share"})
 		doubted = true
 	}
 	for _, p := range r.Pieces {
 		if b := p.Facts.Site.Broken; b != nil {
-			r.Doubt(Doubt{Reason: fmt.Sprintf("the series for zone %s has rows that cannot be read, first %s", p.zone(), b)})
+			r.Doubt(Doubt{Price: true, Reason: fmt.Sprintf("the series for zone %s has rows that cannot be read, first %s", p.zone(), b)})
 			return doubted
 		}
 	}

@@ -43,6 +43,12 @@ type Repository interface {
 // ErrUnknown is wrapped where a repository does not have what was asked for.
 var ErrUnknown = fmt.Errorf("not in the repository")
 
+// FullID tells whether a name is the full id of a commit. What else a name may
+// be, a branch or the start of an id, can mean another commit tomorrow.
+func FullID(name string) bool {
+	return (len(name) == 40 || len(name) == 64) && strings.Trim(name, "0123456789abcdef") == ""
+}
+
 // Hash is the hash over the files that match any of the globs and none of the
 // exceptions: SHA-256 over their sorted modes, paths and blob ids. No globs
 // mean all files. The globs must be valid.
