@@ -6,6 +6,9 @@
 set -euo pipefail
 tag=$1
 here=$(cd "$(dirname "${BASH_SOURCE[0]}")" && pwd)
+# Another Go version makes other bytes: the one of go.mod builds every release.
+GOTOOLCHAIN=go$(sed -n 's/^go //p' "$here/../go.mod")
+export GOTOOLCHAIN
 mkdir -p "${2:-dist}"
 dist=$(cd "${2:-dist}" && pwd)
 for target in linux/amd64 linux/arm64 darwin/amd64 darwin/arm64 windows/amd64 windows/arm64; do

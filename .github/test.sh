@@ -11,18 +11,28 @@ packages=(./... ./testdata/demo/gen)
 
 install() {
   local missing=()
-  for tool in gcc git python3; do
-    command -v "$tool" >/dev/null || missing+=("$tool")
+  for tool in gcc git python3 curl shellcheck ip:iproute2; do # command, and package where it is called otherwise
+    command -v "${tool%:*}" >/dev/null || missing+=("${tool#*:}")
   done
-  [ ${#missing[@]} -gt 0 ] || return 0
+  [ ${#missing[@]} -eq 0 ] || debian "${missing[@]}"
+  # The linter of workflows, and the runner that the action is tried on.
+  program actionlint github.com/rhysd/actionlint/cmd/actionlint@v1.7.12
+  program act github.com/nektos/act@v0.2.89
+}
+
+debian() {
   if ! command -v apt-get >/dev/null; then
-    echo "the tests need: ${missing[*]}; install them and run this again" >&2
+    echo "the tests need: $*; install them and run this again" >&2
     exit 2
   fi
   local sudo=""
   [ "$(id -u)" = 0 ] || sudo=sudo
   $sudo apt-get update
-  $sudo apt-get install -y --no-install-recommends "${missing[@]}" libc6-dev ca-certificates
+  $sudo apt-get install -y --no-install-recommends "$@" libc6-dev ca-certificates
+}
+
+program() {
+  command -v "$1" >/dev/null || [ -x "$(go env GOPATH)/bin/$1" ] || go install "$2"
 }
 
 formatted() {
@@ -46,5 +56,5 @@ formatted
 go mod verify
 go vet "${packages[@]}"
 go tool staticcheck "${packages[@]}"
-go test -race "${packages[@]}"
+go test -race -timeout 30m "${packages[@]}" # it builds the action and runs it
 fuzz "${1:-3}"

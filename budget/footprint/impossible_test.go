@@ -1,11 +1,14 @@
 package footprint_test
 
 import (
+	"io"
 	"testing"
 
 	"github.com/stretchr/testify/assert"
 	"github.com/stretchr/testify/require"
 
+	"budgetcheck/budget/finding"
+	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/record"
 	"budgetcheck/budget/unit"
 )
@@ -65,4 +68,38 @@ func TestBeyondMeasure(t *testing.T) {
 	used := open(t).used(0, hour, 1e308, true).close(hour).run(plain(flat(400)), method)
 	assert.True(t, used.Refuted())
 	assert.Nil(t, used.Measured)
+}
+
+// lines is a source of ready lines, for what the reader never lets through.
+type lines struct{ left []record.Line }
+
+func (l *lines) Next() (*record.Line, error) {
+	if len(l.left) == 0 {
+		return nil, io.EOF
+	}
+	next := l.left[0]
+	l.left = l.left[1:]
+	return &next, nil
+}
+
+func (l *lines) Meters() []string        { return []string{"m"} }
+func (l *lines) Findings() *finding.List { return &finding.List{} }
+func (l *lines) Notes() []string         { return nil }
+func (l *lines) Name() string            { return "lines" }
+
+// TestBeforeOpen: a source that is not as strict as the reader cannot have
+// energy from before the run.
+func TestBeforeOpen(t *testing.T) {
+	power := func(no int, at float64) record.Line {
+		return record.Line{No: no, Kind: record.KindPower, At: after(at), Power: 1000}
+	}
+	src := &lines{[]record.Line{
+		{No: 1, Kind: record.KindOpen, At: start, Open: &record.Open{Run: "r1", At: start}},
+		power(2, -60), power(3, 0), power(4, 60),
+	}}
+	p, err := footprint.Weigh(src, method, func(*record.Open) footprint.Facts { return plain(nil) })
+	require.NoError(t, err)
+	require.NotEmpty(t, p.Doubts)
+	assert.Contains(t, p.Doubts[0].Reason, "lines:2: a time before the record opens")
+	assert.InEpsilon(t, 1000*60/3.6e6, float64(p.Meters[0].Measured), 1e-14)
 }

@@ -161,12 +161,10 @@ func (w *weighing) take(l *record.Line) {
 	}
 }
 
-// impossible tells what is wrong with a line that cannot be of the run. The
-// difference of times is taken without a sign: it may be longer than a
-// Duration.
+// impossible tells what is wrong with a line that cannot be of the run.
 func (p *Part) impossible(l *record.Line) string {
 	switch {
-	case l.At < p.Open.At || uint64(l.At-p.Open.At) > uint64(MaxSpan):
+	case l.At < p.Open.At || l.At.Sub(p.Open.At) > MaxSpan:
 		return fmt.Sprintf("a time before the record opens or more than %s after", MaxSpan)
 	case l.Power > most || l.Joules > most || l.Wrap > most || l.Used != nil && l.Used.Energy > most:
 		return "a reading beyond anything that can be measured"

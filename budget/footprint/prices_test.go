@@ -109,6 +109,20 @@ func TestAnnualWithoutSeries(t *testing.T) {
 	assert.Contains(t, r.Doubts[0].Reason, "no average series for zone [NORTH]")
 }
 
+// TestAnnualOfOneSiteOnly: an annual mean is of its site. A part elsewhere
+// without one leaves the run unpriced, whichever comes first.
+func TestAnnualOfOneSiteOnly(t *testing.T) {
+	with, without := plain(nil), plain(nil)
+	with.Site.Annual = ptr(unit.Intensity(412))
+	a, b := kilowatt(t, 1).weigh(with, method), kilowatt(t, 1).weigh(without, method)
+	for _, parts := range [][]*footprint.Part{{a, b}, {b, a}} {
+		r := footprint.Combine(parts, method)
+		assert.Nil(t, r.Operational)
+		assert.Len(t, r.Doubts, 1)
+		assert.InEpsilon(t, 412, float64(r.Proven.Total), 1e-12, "what the one spent is proven")
+	}
+}
+
 // TestZonesOfDoubt: a doubt about several zones names each once, in order,
 // whatever the order of the parts.
 func TestZonesOfDoubt(t *testing.T) {

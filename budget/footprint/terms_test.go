@@ -151,6 +151,11 @@ func TestGapUncertainty(t *testing.T) {
 	assert.InEpsilon(t, math.Sqrt2*scale*1800, energy, 1e-12)
 	assert.InEpsilon(t, math.Sqrt2*scale*(600*100+1200*500), mass, 1e-12)
 
+	// 400 and 1000 W are met only for a moment, beside a gap.
+	moments := open(t).power(0, "a", 700).power(60, "a", 400).power(660, "a", 1000).power(720, "a", 700).power(1320, "a", 700).close(1320)
+	_, energy = gapTerm(t, moments, f)
+	assert.InEpsilon(t, scale*1200, energy, 1e-12)
+
 	mass, energy = gapTerm(t, open(t).powers(0, 3600, 60, "a", 400).powers(7000, 7200, 60, "a", 400).close(7200), f)
 	assert.Zero(t, mass, "a steady meter leaves nothing open")
 	assert.Zero(t, energy)

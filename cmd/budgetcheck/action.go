@@ -88,7 +88,7 @@ func (a *actionRun) judge(ctx context.Context) (*budget.Statement, error) {
 	if a.subject, err = a.readSubject(ctx); err != nil {
 		return nil, err
 	}
-	a.posting.Pull, a.posting.Commit = a.subject.Pull, a.subject.Head
+	a.posting.Pull, a.posting.Commit = a.subject.CommentOn(), a.subject.Head
 	repo := inputs.Either{}
 	if clone, err := inputs.OpenGit(ctx, "."); err == nil {
 		repo = append(repo, clone)

@@ -88,13 +88,25 @@ func TestDispatchForAPullRequest(t *testing.T) {
 	for _, event := range []string{"workflow_dispatch", "repository_dispatch"} {
 		w := newWorld(t, nil)
 		s := w.event(event, map[string]any{"client_payload": map[string]any{"pull": 999}, "inputs": map[string]any{"pull": "998"}}, lean(t, w.head))
-		s.inputs = map[string]string{"pull": "7"}
+		s.inputs = map[string]string{"pull": "7", "commit": map[string]string{"repository_dispatch": w.head}[event]}
 		o := w.run(s)
 		require.Equal(t, exitDone, o.status, "%s%s", o.log, o.complaint)
 		assert.Len(t, w.api.Comments(7), 1)
 		require.Len(t, w.api.CheckRuns(), 1)
 		assert.Equal(t, w.head, w.api.CheckRuns()[0].HeadSHA)
 	}
+}
+
+// A run that comes late, for a commit that the pull request has left behind,
+// gets its check there and leaves the comment to the newest commit.
+func TestLateDispatch(t *testing.T) {
+	w := newWorld(t, nil)
+	s := w.event("repository_dispatch", nil, lean(t, w.base))
+	s.inputs = map[string]string{"pull": "7", "commit": w.base}
+	w.run(s)
+	assert.Empty(t, w.api.Comments(7))
+	require.Len(t, w.api.CheckRuns(), 1)
+	assert.Equal(t, w.base, w.api.CheckRuns()[0].HeadSHA)
 }
 
 func TestDispatchForABranchAndACommit(t *testing.T) {
@@ -132,6 +144,7 @@ func TestMergeGroup(t *testing.T) {
 		require.Equal(t, want, o.status, "%s%s", o.log, o.complaint)
 		require.Len(t, w.api.CheckRuns(), 1)
 		assert.Equal(t, group, w.api.CheckRuns()[0].HeadSHA)
+		assert.Empty(t, w.api.Comments(7), "the group's statement does not take the place of the pull request's")
 	}
 }
 

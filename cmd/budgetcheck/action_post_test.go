@@ -189,3 +189,32 @@ func TestRefusalWithTheToken(t *testing.T) {
 	assert.Equal(t, exitFinding, o.status)
 	assert.Contains(t, o.log, "no: ***")
 }
+
+// Where the token may write nothing, the exit status is that of the ruling, and
+// why nothing was posted is said without alarm.
+func TestNothingMayBeWritten(t *testing.T) {
+	for want, records := range map[int]func(*testing.T, string) map[string]string{exitDone: lean, exitFinding: heavy} {
+		w := newWorld(t, nil)
+		w.host().Refuse("POST", "")
+		o := w.run(w.pull(records(t, w.head)))
+		assert.Equal(t, want, o.status)
+		assert.Contains(t, o.log, "::notice::comment: not posted, for the token may not add a comment to this pull request")
+		assert.Contains(t, o.log, "::notice::status: not posted, for the token may not add a check or status to this commit")
+		assert.NotContains(t, o.log, "::warning::comment")
+	}
+}
+
+// A glob that matches nothing is most often a mistake, and is named.
+func TestGlobsThatMatchNothing(t *testing.T) {
+	w := newWorld(t, nil)
+	s := w.pull(lean(t, w.head))
+	s.inputs = map[string]string{"head": "recrods/*.ndjson", "base": "before/*.ndjson"}
+	o := w.run(s)
+	assert.Equal(t, exitFinding, o.status)
+	assert.Contains(t, o.statement, "no file matches recrods/*.ndjson (head)")
+	assert.Contains(t, o.statement, "no file matches before/*.ndjson (base)")
+	s.inputs = map[string]string{"head": "records/[*.ndjson"}
+	o = w.run(s)
+	assert.Equal(t, exitCannot, o.status)
+	assert.Contains(t, o.complaint, "is not a glob")
+}

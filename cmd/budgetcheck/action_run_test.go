@@ -59,7 +59,7 @@ func TestWorkflowRunOfAFork(t *testing.T) {
 
 // A record of another commit proves nothing, also where the commit is real.
 func TestWorkflowRunWithRecordsOfOtherCommits(t *testing.T) {
-	for _, commit := range []string{"base", "00000000000000000000000000000000000000aa", "--upload-pack=x", ""} {
+	for _, commit := range []string{"base", "00000000000000000000000000000000000000aa", "origin/topic", "--upload-pack=x", ""} {
 		w := forked(t)
 		if commit == "base" {
 			commit = w.base

@@ -152,6 +152,10 @@ func (c *change) by(ctx context.Context, policy *budget.Policy) (*budget.Stateme
 	if err != nil {
 		return nil, err
 	}
+	for _, f := range l.unread[len(unread):] {
+		l.notes = append(l.notes, f.String())
+	}
+	l.notes = append(l.notes, l.missing...) // which rulings tell whether anything is due
 	if policy == c.policy {
 		tellFindings(c.s.err, l, head, base)
 	}

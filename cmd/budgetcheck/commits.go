@@ -15,7 +15,8 @@ const mostCommits = 50
 
 // readCommits lists the files of the head commit, of the merge base where
 // there is one, and of the commits that records name. A commit that is named
-// and not there is left out: the run that names it is then unproven.
+// and not there is left out: the run that names it is then unproven. So is a
+// branch: a run of last month would stand for what is on it today.
 func readCommits(ctx context.Context, repo inputs.Repository, head, mergeBase string, parts ...[]*footprint.Part) (*budget.Commits, error) {
 	c := &budget.Commits{Named: map[string]inputs.Tree{}}
 	var err error
@@ -29,7 +30,7 @@ func readCommits(ctx context.Context, repo inputs.Repository, head, mergeBase st
 	}
 	for _, p := range slices.Concat(parts...) {
 		name := p.Open.Commit
-		if _, known := c.Named[name]; known || name == "" || name == head || len(c.Named) == mostCommits {
+		if _, known := c.Named[name]; known || !inputs.FullID(name) || name == head || len(c.Named) == mostCommits {
 			continue
 		}
 		if t, err := repo.Tree(ctx, name); err == nil {

@@ -38,6 +38,9 @@ type Subject struct {
 	DefaultBranch string
 	// Tag is the tag that the run was for, empty if it was for a branch.
 	Tag string
+	// Stale says that the pull request has moved on from the given Head: the
+	// statement is about that commit alone.
+	Stale bool
 	// NeedsLookup says that something above is missing which Complete can ask for.
 	NeedsLookup bool
 }
@@ -46,6 +49,16 @@ type Subject struct {
 // fork runs with a token that only reads; what it is to post, the workflow_run
 // after it posts.
 func (s Subject) MayWrite() bool { return !s.Fork || s.Event != eventPull }
+
+// CommentOn is the pull request that the statement is a comment on; 0 for none.
+// A merge group is judged as a whole, and a commit that a pull request has left
+// behind must not take the place of its newest: both have their check alone.
+func (s Subject) CommentOn() int {
+	if s.Cause == eventGroup || s.Stale {
+		return 0
+	}
+	return s.Pull
+}
 
 // With replaces what the event says by the action's inputs branch, pull and
 // commit, for runs that were dispatched from elsewhere. An empty input was not

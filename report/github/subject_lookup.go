@@ -66,6 +66,7 @@ func (h *Host) askPull(ctx context.Context, s *Subject) error {
 	case given.Branch != "" && s.Branch != given.Branch:
 		s.Branch, s.Base = given.Branch, "" // the base was the tip of another branch
 	}
+	s.Stale = given.Head != "" && given.Head != s.Head
 	s.Head = cmp.Or(given.Head, s.Head)
 	return nil
 }

@@ -110,6 +110,20 @@ func TestCompleteFindsNoPull(t *testing.T) {
 	}
 }
 
+// An owner may have several repositories of one network, and a fork that is
+// gone has no owner any more: then only this tells them apart.
+func TestCompleteKeepsForksApart(t *testing.T) {
+	second := own(3, "main")
+	second.HeadOf = "harbour/tide-forecast-2"
+	_, _, err := complete(t, ownRun, second)
+	require.ErrorIs(t, err, ErrNoPull)
+
+	unnamed, fromHome := forkRun, forked()
+	unnamed.HeadOwner, fromHome.HeadOf = "", ""
+	_, _, err = complete(t, unnamed, fromHome)
+	require.ErrorIs(t, err, ErrNoPull)
+}
+
 // What the filters of a host let through is compared once more.
 func TestCompleteDoesNotTrustFilters(t *testing.T) {
 	moved := forked()
