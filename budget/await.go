@@ -14,6 +14,10 @@ func (s *Statement) Awaits() bool {
 	})
 }
 
+// Warns tells whether unproven rulings leave the gate open, by the policy. A
+// policy of the head that cannot be used closes it all the same.
+func (s *Statement) Warns() bool { return s.warns && !s.broken }
+
 // onlyMissing tells whether all doubts would be settled by further records.
 func onlyMissing(doubts []footprint.Doubt) bool {
 	return !slices.ContainsFunc(doubts, func(d footprint.Doubt) bool { return !d.Missing })

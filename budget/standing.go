@@ -73,14 +73,18 @@ func (p *Policy) OwnFiles() (globs []string) {
 // SeriesGlobs are the globs of the policy's series, from the root of the
 // repository.
 func (p *Policy) SeriesGlobs() (globs []string) {
-	if len(p.Files) == 0 {
-		return nil
-	}
-	dir := inputs.Literal(path.Dir(path.Join(p.Prefix, p.Files[0])))
+	dir := inputs.Literal(path.Dir(path.Join(p.Prefix, p.SeriesFrom())))
 	for _, g := range p.Grid.Series {
 		globs = append(globs, path.Join(dir, g))
 	}
 	return globs
+}
+
+// SeriesFrom is the policy file that names the series: their globs are relative
+// to its folder.
+func (p *Policy) SeriesFrom() string {
+	file, _ := p.Grid.of("series")
+	return file
 }
 
 // unchanged tells whether the job's inputs are those of the merge base. Then

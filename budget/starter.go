@@ -25,7 +25,9 @@ type Starter struct {
 type StarterMachine struct {
 	Name   string
 	Units  float64
-	Meters int
+	Meters int // of the whole machine; 0 if no record shows it whole
+
+	perUnit float64 // meters for one unit, as the records of some units show
 }
 
 // StarterJob is a job as records show it.
@@ -85,8 +87,13 @@ func (s *Starter) place(part *footprint.Part) {
 	}
 	m := &s.Machines[n]
 	m.Units = max(m.Units, o.Reserved)
-	if o.Reserved == 0 { // the whole machine: all its meters are there
+	if o.Reserved > 0 {
+		m.perUnit = max(m.perUnit, float64(len(part.Meters))/o.Reserved)
+	} else { // the whole machine: all its meters are there
 		m.Meters = max(m.Meters, len(part.Meters))
+	}
+	if m.perUnit > 0 { // as many units as have all the meters
+		m.Units = max(m.Units, float64(m.Meters)/m.perUnit)
 	}
 }
 

@@ -62,7 +62,7 @@ func TestStarter(t *testing.T) {
 	}
 	s := budget.NewStarter(bareRuns(t, steady, records...), []string{"grid/*.csv"})
 	assert.Equal(t, []string{"NORTH", "SOUTH"}, s.Sites)
-	assert.Equal(t, []budget.StarterMachine{{Name: "quad", Units: 1, Meters: 4}, {Name: "octo", Units: 8}}, s.Machines)
+	assert.Equal(t, [][]any{{"quad", 1., 4}, {"octo", 8., 0}}, shown(s.Machines))
 	assert.Equal(t, []budget.StarterJob{{Name: "retrain-tide", Stage: "training", Limit: "250 g"}, {Name: "score-tide", Stage: "evaluation", Limit: "62.5 g"}}, s.Jobs,
 		"a quarter more than the largest run")
 	assert.Len(t, s.Unknown, 4)
@@ -71,6 +71,24 @@ func TestStarter(t *testing.T) {
 	assert.Equal(t, "2.50 kWh", s.Jobs[0].Limit, "without a series limits are energies")
 	assert.Contains(t, s.Unknown[len(s.Unknown)-1], "the carbon intensity")
 	assert.Empty(t, budget.NewStarter(bareRuns(t, steady, night(meters(0))), nil).Jobs[0].Limit, "no figure, no limit")
+}
+
+func shown(machines []budget.StarterMachine) (list [][]any) {
+	for _, m := range machines {
+		list = append(list, []any{m.Name, m.Units, m.Meters})
+	}
+	return list
+}
+
+// Records of the whole machine and of some of its units tell together how many
+// units there are, in whichever order they come.
+func TestStarterUnits(t *testing.T) {
+	whole := night()
+	half := night(called("b.ndjson", "n2"), meters(2), later(-unit.Day), func(s *sketch) { s.open.Reserved = 2 })
+	for _, records := range [][]sketch{{whole, half}, {half, whole}} {
+		s := budget.NewStarter(bareRuns(t, steady, records...), nil)
+		assert.Equal(t, [][]any{{"quad", 4., 4}}, shown(s.Machines))
+	}
 }
 
 // Whatever a record calls its site, the starter policy reads it back.

@@ -118,6 +118,7 @@ var (
 	closed   = scenario{}
 	opened   = scenario{edit: []string{`limit = "2.2 kg"`, `limit = "2.4 kg"`}}
 	unprove  = scenario{edit: []string{`min_coverage = 0.95`, `min_coverage = 0.999`, `limit = "2.2 kg"`, `limit = "2.4 kg"`}}
+	warnOver = scenario{edit: []string{`unproven = "close"`, `unproven = "warn"`, `min_coverage = 0.95`, `min_coverage = 0.999`}}
 	warnOnly = scenario{edit: append([]string{`unproven = "close"`, `unproven = "warn"`}, unprove.edit...)}
 	noRule   = scenario{branch: "harbour-works"}
 	noBase   = scenario{noBase: true}

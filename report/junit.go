@@ -38,11 +38,12 @@ type message struct {
 }
 
 // JUnit writes one test case for each ruling: over is a failure, unproven an
-// error, or skipped where the policy only warns of it.
+// error. What does not close the gate is skipped: unproven where the policy only
+// warns of it, and everything where the branch has no policy yet.
 func JUnit(w io.Writer, s *budget.Statement) error {
 	out := suites{Suite: suite{Name: "budgetcheck, branch " + Inert(s.Branch), Tests: len(s.Rulings), Timestamp: s.Now.Time().Format("2006-01-02T15:04:05")}}
 	for _, r := range s.Rulings {
-		out.Suite.add(r, s.Gate == budget.Open)
+		out.Suite.add(r, s.Gate == budget.Open || r.State == budget.Unproven && s.Warns())
 	}
 	if _, err := io.WriteString(w, xml.Header); err != nil {
 		return err
@@ -56,7 +57,7 @@ func JUnit(w io.Writer, s *budget.Statement) error {
 	return err
 }
 
-func (s *suite) add(r budget.Ruling, warned bool) {
+func (s *suite) add(r budget.Ruling, harmless bool) {
 	text := Inert(told(r))
 	m := &message{text, text}
 	if at := place(r); at != "" {
@@ -67,12 +68,12 @@ func (s *suite) add(r budget.Ruling, warned bool) {
 		c.Name = Inert(r.Name + ", job " + r.Job)
 	}
 	switch {
+	case harmless && (r.State == budget.Over || r.State == budget.Unproven):
+		c.Skipped = m
+		s.Skipped++
 	case r.State == budget.Over:
 		c.Failure = m
 		s.Failures++
-	case r.State == budget.Unproven && warned:
-		c.Skipped = m
-		s.Skipped++
 	case r.State == budget.Unproven:
 		c.Error = m
 		s.Errors++

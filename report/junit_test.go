@@ -33,11 +33,12 @@ func TestJUnit(t *testing.T) {
 		scenario
 		tests, failures, errors, skipped int
 	}{
-		"over":        {closed, 6, 1, 0, 0},
-		"open":        {opened, 6, 0, 0, 0},
-		"unproven":    {unprove, 6, 0, 4, 0},
-		"only warned": {warnOnly, 6, 0, 0, 4},
-		"no rule":     {noRule, 0, 0, 0, 0},
+		"over":                           {closed, 6, 1, 0, 0},
+		"open":                           {opened, 6, 0, 0, 0},
+		"unproven":                       {unprove, 6, 0, 4, 0},
+		"only warned":                    {warnOnly, 6, 0, 0, 4},
+		"over, and unproven only warned": {warnOver, 6, 1, 0, 3},
+		"no rule":                        {noRule, 0, 0, 0, 0},
 	} {
 		t.Run(name, func(t *testing.T) {
 			s := c.judge(t)

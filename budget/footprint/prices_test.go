@@ -10,12 +10,13 @@ import (
 	"budgetcheck/budget/finding"
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/grid"
+	"budgetcheck/budget/record"
 	"budgetcheck/budget/unit"
 )
 
 // kilowatt is a run at 1 kW for some hours.
-func kilowatt(t test, h float64) *sheet {
-	return open(t).powers(0, h*hour, 60, "m", 1000).close(h * hour)
+func kilowatt(t test, h float64, edits ...func(*record.Open)) *sheet {
+	return open(t, edits...).powers(0, h*hour, 60, "m", 1000).close(h * hour)
 }
 
 // holed has the value 100 in every hour of a day but some.
@@ -114,7 +115,7 @@ func TestAnnualWithoutSeries(t *testing.T) {
 func TestAnnualOfOneSiteOnly(t *testing.T) {
 	with, without := plain(nil), plain(nil)
 	with.Site.Annual = ptr(unit.Intensity(412))
-	a, b := kilowatt(t, 1).weigh(with, method), kilowatt(t, 1).weigh(without, method)
+	a, b := kilowatt(t, 1, part("a", 2)).weigh(with, method), kilowatt(t, 1, part("b", 2)).weigh(without, method)
 	for _, parts := range [][]*footprint.Part{{a, b}, {b, a}} {
 		r := footprint.Combine(parts, method)
 		assert.Nil(t, r.Operational)
@@ -130,7 +131,7 @@ func TestZonesOfDoubt(t *testing.T) {
 	for _, zone := range []string{"SOUTH", "NORTH", "SOUTH"} {
 		f := plain(nil)
 		f.Site.Zone = zone
-		parts = append(parts, kilowatt(t, 1).weigh(f, method))
+		parts = append(parts, kilowatt(t, 1, part(zone, 3)).weigh(f, method))
 	}
 	r := footprint.Combine(parts, method)
 	require.NotEmpty(t, r.Doubts)

@@ -73,8 +73,8 @@ func (o *options) mustPolicy() (*budget.Policy, error) {
 // of the flags, which come later and so win where they differ.
 func (l *loader) readSeries(o *options) error {
 	var own []string
-	if len(o.policy) > 0 {
-		dir := escape(filepath.Dir(o.policy[0]))
+	if len(l.policy.Grid.Series) > 0 {
+		dir := escape(filepath.Dir(l.policy.SeriesFrom()))
 		for _, g := range l.policy.Grid.Series {
 			if g = filepath.FromSlash(g); !filepath.IsAbs(g) {
 				g = filepath.Join(dir, g)

@@ -223,4 +223,21 @@ func TestTheCommentFitsTheHost(t *testing.T) {
 	assert.Contains(t, body, "\n\nThe statement is longer than this page takes: it ends here, and goes on in [the summary of this run](https://harbour.example/harbour/tide-forecast/actions/runs/4242).\n")
 }
 
+// The marker counts too: what just fits beside it is left whole, and one
+// character more is cut.
+func TestTheMarkerTakesRoom(t *testing.T) {
+	s := apitest.New(t, apitest.Options{})
+	h, _ := patient(t, s)
+	p := posting()
+	p.Places = []Place{Comment}
+	p.Markdown = strings.Repeat("潮\n", (mostComment-utf8.RuneCountInString(mark))/2)
+	p.Markdown += strings.Repeat("潮", mostComment-utf8.RuneCountInString(mark+p.Markdown))
+	post(t, h, p)
+	assert.Equal(t, mark+p.Markdown, only(t, s).Body)
+	assert.Equal(t, mostComment, utf8.RuneCountInString(only(t, s).Body))
+	p.Markdown += "潮"
+	post(t, h, p)
+	assert.Contains(t, only(t, s).Body, "it ends here")
+}
+
 func none(string) string { return "" }

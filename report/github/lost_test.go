@@ -118,3 +118,18 @@ func TestALimitedCreationIsSentAgain(t *testing.T) {
 	assert.Equal(t, seconds(8), c.waits)
 	assert.Equal(t, 2, s.Count("POST", "comments"))
 }
+
+// A comment of ours that may not be edited any more, such as a locked one, is
+// not taken for the one whose creation got lost.
+func TestAnOldCommentIsNotTheLostOne(t *testing.T) {
+	s := apitest.New(t, apitest.Options{})
+	s.AddComment(214, apitest.Bot("github-actions"), mark+"old")
+	s.Refuse("PATCH", "comments")
+	s.Plant(apitest.Fault{Method: "POST", Path: "comments", Status: 502, Times: 1})
+	h, _ := patient(t, s)
+	post(t, h, posting())
+	all := s.Comments(214)
+	require.Len(t, all, 2)
+	assert.Contains(t, all[1].Body, "Gate closed")
+	assert.Equal(t, 2, s.Count("POST", "comments"))
+}

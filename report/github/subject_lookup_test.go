@@ -166,7 +166,7 @@ func TestCompleteAsksForAGivenPull(t *testing.T) {
 	}
 	whole := Subject{Branch: "main", Pull: 214, Pulls: []int{214}, Head: headSHA, Base: baseSHA, Fork: true, HeadBranch: "main", HeadOwner: "spring-tide", DefaultBranch: "main"}
 	older, lax := whole, whole
-	older.Head = mergeSHA
+	older.Head, older.Stale = mergeSHA, true
 	lax.Branch, lax.Base = "lax", ""
 	for _, c := range []struct {
 		what string

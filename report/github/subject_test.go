@@ -147,3 +147,14 @@ func TestWithOnAWorkflowRunAlwaysLooksUp(t *testing.T) {
 	require.NoError(t, err)
 	assert.True(t, got.NeedsLookup)
 }
+
+// One comment on a pull request, about its newest commit.
+func TestCommentOn(t *testing.T) {
+	stale, group := ofPull, ofPull
+	stale.Stale = true
+	group.Event, group.Cause = "workflow_run", "merge_group"
+	assert.Equal(t, 214, ofPull.CommentOn())
+	for _, s := range []Subject{stale, group, ofPush, ofTag} {
+		assert.Zero(t, s.CommentOn(), "%+v", s)
+	}
+}
