@@ -74,6 +74,8 @@ func (l Limit) unfit(r *footprint.Run) string {
 	switch {
 	case l.Rate == nil:
 		return ""
+	case r.Work == nil && len(r.Doubts) > 0: // parts that disagree about their work have no sum
+		return r.Doubts[0].Reason
 	case r.Work == nil:
 		return fmt.Sprintf("run %s has no work lines; the limit is per %s", r.Run, l.Rate.Unit)
 	case r.Work.Unit != l.Rate.Unit:

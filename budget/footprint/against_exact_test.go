@@ -13,21 +13,20 @@ import (
 	"budgetcheck/budget/unit"
 )
 
-// drawSite draws series with and without holes, such that end before the run
-// does, none at all, and sites with and without an annual mean.
-func drawSite(t *rapid.T, f *footprint.Facts) {
-	switch rapid.SampledFrom([]string{"whole", "holes", "ends", "ends", "none"}).Draw(t, "series") {
-	case "whole":
-		f.Site.Series = drawSeries(t, false)
-	case "holes":
-		f.Site.Series = drawSeries(t, true)
-	case "ends":
-		f.Site.Series = drawPast(t)
-	}
-	if rapid.Bool().Draw(t, "annual") {
-		f.Site.Annual = ptr(unit.Intensity(412))
-	}
-	f.Site.PUE = rapid.SampledFrom([]float64{1, 1.18}).Draw(t, "PUE")
+// sites are where the drawn records run: with series of every kind, with and
+// without an annual mean.
+var sites = []struct {
+	name   string
+	series func(*rapid.T) *grid.Series
+	annual bool
+}{
+	{"whole series", func(t *rapid.T) *grid.Series { return drawSeries(t, false) }, false},
+	{"holes, annual mean", func(t *rapid.T) *grid.Series { return drawSeries(t, true) }, true},
+	{"holes", func(t *rapid.T) *grid.Series { return drawSeries(t, true) }, false},
+	{"series ends, annual mean", drawPast, true},
+	{"series ends", drawPast, false},
+	{"annual mean only", func(*rapid.T) *grid.Series { return nil }, true},
+	{"nothing", func(*rapid.T) *grid.Series { return nil }, false},
 }
 
 // drawPast draws hourly values of some nights before start, a few of which are
@@ -60,43 +59,61 @@ func drawMachine(t *rapid.T, f *footprint.Facts) {
 // TestAgainstExact compares random records of several meters, counters, gaps
 // and holes with the same in rational numbers.
 func TestAgainstExact(t *testing.T) {
-	var priced [4]int
-	rapid.Check(t, func(t *rapid.T) {
-		d, f := drawRecord(t), plain(nil)
-		drawSite(t, &f)
-		drawMachine(t, &f)
-		m := method
-		m.MinCoverage = unit.Share(rapid.SampledFrom([]float64{0, 0.5, 0.95}).Draw(t, "min coverage"))
-		units := rapid.SampledFrom([]float64{0, 1, 4}).Draw(t, "reserved")
-		want := weighExactly(d, f, m, units)
-		got := d.sheet(t, reserved(units)).run(f, m)
+	var priced [4]int // runs, by source
+	for _, site := range sites {
+		t.Run(site.name, func(t *testing.T) {
+			rapid.Check(t, func(t *rapid.T) {
+				f := plain(site.series(t))
+				if site.annual {
+					f.Site.Annual = ptr(unit.Intensity(412))
+				}
+				f.Site.PUE = rapid.SampledFrom([]float64{1, 1.18}).Draw(t, "PUE")
+				drawMachine(t, &f)
+				for n, did := range compare(t, f) {
+					if did {
+						priced[n]++
+					}
+				}
+			})
+		})
+	}
+	if !testing.Short() { // which draws too few
+		assert.NotContains(t, priced, 0, "every source priced some of the records")
+	}
+}
 
-		kwh := func(ws *big.Rat) float64 { return float(over(ws, rat(3.6e6))) }
-		metered := plus(want.measured, want.filled)
-		facility := plus(plus(want.energy[0], want.energy[1]), plus(want.energy[2], want.energy[3]))
-		near(t, kwh(metered), value(t, got.Measured), "measured")
-		near(t, kwh(facility)/f.Site.PUE, value(t, got.MachineKWh), "machine")
-		near(t, kwh(facility), value(t, got.Facility), "facility")
-		near(t, kwh(want.provenEnergy), float64(got.Proven.Facility), "proven energy")
-		near(t, float(want.provenMass), float64(got.Proven.Total), "proven mass")
-		if metered.Sign() > 0 {
-			near(t, float(over(want.measured, metered)), value(t, got.Coverage), "coverage")
-		} else {
-			assert.Nil(t, got.Coverage)
-		}
-		sameHours(t, want, got)
-		if facility.Sign() == 0 {
-			assert.Nil(t, got.Operational)
-			return
-		}
-		samePrices(t, want, got, facility, m)
-		for n := range priced {
-			if want.energy[n].Sign() > 0 && got.Operational != nil {
-				priced[n]++
-			}
-		}
-	})
-	assert.NotContains(t, priced, 0, "every source priced some of the records")
+// compare draws a record and weighs it both ways. It tells which sources
+// priced some of it.
+func compare(t *rapid.T, f footprint.Facts) (priced [4]bool) {
+	d, m := drawRecord(t), method
+	m.MinCoverage = unit.Share(rapid.SampledFrom([]float64{0, 0.5, 0.95}).Draw(t, "min coverage"))
+	units := rapid.SampledFrom([]float64{0, 1, 4}).Draw(t, "reserved")
+	want := weighExactly(d, f, m, units)
+	got := d.sheet(t, reserved(units)).run(f, m)
+
+	kwh := func(ws *big.Rat) float64 { return float(over(ws, rat(3.6e6))) }
+	metered := plus(want.measured, want.filled)
+	facility := plus(plus(want.energy[0], want.energy[1]), plus(want.energy[2], want.energy[3]))
+	near(t, kwh(metered), value(t, got.Measured), "measured")
+	near(t, kwh(facility)/f.Site.PUE, value(t, got.MachineKWh), "machine")
+	near(t, kwh(facility), value(t, got.Facility), "facility")
+	near(t, kwh(want.provenEnergy), float64(got.Proven.Facility), "proven energy")
+	near(t, float(want.provenMass), float64(got.Proven.Total), "proven mass")
+	if metered.Sign() > 0 {
+		near(t, float(over(want.measured, metered)), value(t, got.Coverage), "coverage")
+	} else {
+		assert.Nil(t, got.Coverage)
+	}
+	sameHours(t, want, got)
+	if facility.Sign() == 0 {
+		assert.Nil(t, got.Operational)
+		return priced
+	}
+	samePrices(t, want, got, facility, m)
+	for n := range priced {
+		priced[n] = want.energy[n].Sign() > 0 && got.Operational != nil
+	}
+	return priced
 }
 
 // sameHours adds the run's hours up to full ones and compares them.

@@ -16,8 +16,9 @@ import (
 	"budgetcheck/report/github"
 )
 
-// patience is for all calls to the code host together. When it stays down the
-// gate still exits by its ruling.
+// patience is for reading from the code host, and again for posting to it, so
+// that a long judgement takes nothing from it. When the host stays down the gate
+// still exits by its ruling.
 const patience = 3 * time.Minute
 
 // action is the step of action.yml: it judges what the event asks for, posts
@@ -51,9 +52,7 @@ func (a *actionRun) run() (int, error) {
 	if err := a.read(); err != nil {
 		return 0, err
 	}
-	ctx, cancel := context.WithTimeout(context.Background(), patience)
-	defer cancel()
-	statement, err := a.judge(ctx)
+	statement, err := a.judge()
 	if errors.Is(err, github.ErrNoPull) {
 		return exitDone, a.runner.Log("Nothing to judge", err.Error())
 	}
@@ -63,7 +62,7 @@ func (a *actionRun) run() (int, error) {
 	if err != nil {
 		a.posting.Trouble = err.Error()
 	}
-	return a.status(), errors.Join(err, a.tell(), a.post(ctx))
+	return a.status(), errors.Join(err, a.tell(), a.post())
 }
 
 // read takes the inputs. The token is masked before anything else is done.
@@ -83,7 +82,9 @@ func (a *actionRun) read() (err error) {
 }
 
 // judge finds out what is to be judged, and judges it.
-func (a *actionRun) judge(ctx context.Context) (*budget.Statement, error) {
+func (a *actionRun) judge() (*budget.Statement, error) {
+	ctx, cancel := context.WithTimeout(context.Background(), patience)
+	defer cancel()
 	var err error
 	if a.subject, err = a.readSubject(ctx); err != nil {
 		return nil, err
@@ -154,7 +155,9 @@ func (a *actionRun) tell() error {
 
 // post posts the statement and tells what could not be posted. None of it
 // changes the verdict.
-func (a *actionRun) post(ctx context.Context) error {
+func (a *actionRun) post() error {
+	ctx, cancel := context.WithTimeout(context.Background(), patience)
+	defer cancel()
 	if !a.subject.MayWrite() {
 		a.posting.Places = slices.DeleteFunc(a.posting.Places, func(p github.Place) bool { return p != github.Summary })
 		if err := a.runner.Log("Nothing is posted", "The pull request comes from a fork, whose token only reads. The workflow_run after it posts."); err != nil {

@@ -37,15 +37,19 @@ func hostileStatement(text string, rulings int) *budget.Statement {
 	for n := range s.Rulings {
 		r := &s.Rulings[n]
 		r.Name, r.Job, r.ObservedText, r.LimitText, r.PolicyFile = text, text, text, text, text
-		r.Reason = strings.Repeat(text+" ", 1+300/(len(text)+1))
+		r.Reason = strings.Repeat(text+" ", 1+500/(len(text)+1))
 	}
 	return s
 }
 
 func TestHostileTextIsInertWhereverItIsPosted(t *testing.T) {
-	cut := 0
+	long, cut := 0, 0
 	for n, foreign := range hostileTexts {
-		for _, rulings := range []int{4, 250} {
+		if testing.Short() && n%6 != 0 {
+			continue
+		}
+		long++
+		for _, rulings := range []int{4, 150} {
 			t.Run(fmt.Sprint(n, " ", rulings), func(t *testing.T) {
 				s := apitest.New(t, apitest.Options{})
 				h, _ := patient(t, s)
@@ -72,7 +76,8 @@ func TestHostileTextIsInertWhereverItIsPosted(t *testing.T) {
 			})
 		}
 	}
-	assert.GreaterOrEqual(t, cut, len(hostileTexts), "the long ones were to be cut")
+	assert.NotZero(t, long)
+	assert.GreaterOrEqual(t, cut, long, "the long ones were to be cut")
 }
 
 // requireHarmlessLog writes all that goes to the log and looks for commands
