@@ -37,7 +37,7 @@ func TestHoleInSeries(t *testing.T) {
 	st := checkFine(t, priced(small, annual...), "a hole of 5 %, by the year's mean")
 	assert.InDelta(t, 0.95*100+0.05*400, float64(*st.Runs[0].Total), 1e-9)
 	assert.Contains(t, strings.Join(st.Runs[0].Notes, "\n"), "5.00 % of the energy is priced with the site's annual mean")
-	checkDoubt(t, priced(small), "no intensity: 5.00 % of the energy falls into holes of the series for zone [NORTH]")
+	checkDoubt(t, priced(small), "no intensity: 5.00 % of the energy falls into holes of the series for zone NORTH")
 
 	large := row(-60, 10, "100") + row(14, 90, "100")
 	checkDoubt(t, priced(large, annual...), "no intensity: 6.67 % of the energy falls into holes")
@@ -47,7 +47,7 @@ func TestHoleInSeries(t *testing.T) {
 
 func TestNoSeries(t *testing.T) {
 	other := strings.ReplaceAll(row(-60, 90, "100"), "NORTH", "EAST")
-	st := checkDoubt(t, priced(other), "no intensity: there is no average series for zone [NORTH]")
+	st := checkDoubt(t, priced(other), "no intensity: there is no average series for zone NORTH")
 	assert.Nil(t, st.Runs[0].Total)
 	checkFine(t, priced(other, append(annual, `"150 g"`, `"500 g"`)...), "the year's mean, for want of a series")
 }
@@ -55,7 +55,7 @@ func TestNoSeries(t *testing.T) {
 // Average and marginal factors never meet in one sum.
 func TestMarginal(t *testing.T) {
 	marginal := []string{"[account]\n", "[account]\nfactor = \"marginal\"\n"}
-	checkDoubt(t, priced(row(-60, 90, "100"), append(marginal, annual...)...), "no intensity: there is no marginal series for zone [NORTH]")
+	checkDoubt(t, priced(row(-60, 90, "100"), append(marginal, annual...)...), "no intensity: there is no marginal series for zone NORTH")
 	checkFine(t, priced(strings.ReplaceAll(row(-60, 90, "100"), "average", "marginal"), marginal...), "a marginal series")
 }
 

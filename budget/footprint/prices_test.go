@@ -68,7 +68,7 @@ func TestAnnualInHoles(t *testing.T) {
 				assert.Nil(t, r.Total)
 				assert.Nil(t, r.Intensity)
 				require.Len(t, r.Doubts, 1)
-				assert.Contains(t, r.Doubts[0].Reason, "holes of the series for zone [NORTH]")
+				assert.Contains(t, r.Doubts[0].Reason, "holes of the series for zone NORTH")
 				assert.InDelta(t, 1-c.minCoverage, r.Doubts[0].Limit, 1e-12)
 				assert.Zero(t, r.Priced.Annual, "what may not be used prices nothing")
 				return
@@ -107,7 +107,7 @@ func TestAnnualWithoutSeries(t *testing.T) {
 	r = kilowatt(t, 2).run(f, method)
 	assert.Nil(t, r.Operational)
 	require.Len(t, r.Doubts, 1)
-	assert.Contains(t, r.Doubts[0].Reason, "no average series for zone [NORTH]")
+	assert.Contains(t, r.Doubts[0].Reason, "no average series for zone NORTH")
 }
 
 // TestAnnualOfOneSiteOnly: an annual mean is of its site. A part elsewhere
@@ -135,7 +135,7 @@ func TestZonesOfDoubt(t *testing.T) {
 	}
 	r := footprint.Combine(parts, method)
 	require.NotEmpty(t, r.Doubts)
-	assert.Contains(t, r.Doubts[len(r.Doubts)-1].Reason, "zone [NORTH SOUTH]")
+	assert.Contains(t, r.Doubts[len(r.Doubts)-1].Reason, "zone NORTH and SOUTH")
 	assert.Empty(t, r.Zone)
 }
 

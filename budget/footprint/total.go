@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"maps"
 	"slices"
+	"strings"
 
 	"budgetcheck/budget/grid"
 	"budgetcheck/budget/unit"
@@ -124,7 +125,7 @@ func (r *Run) zones() string {
 		zones = append(zones, p.zone())
 	}
 	slices.Sort(zones)
-	return fmt.Sprintf("zone %v", slices.Compact(zones))
+	return "zone " + strings.Join(slices.Compact(zones), " and ")
 }
 
 // noteSources says what of the price is not measured.
