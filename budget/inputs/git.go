@@ -34,7 +34,10 @@ func (g *Git) run(ctx context.Context, args ...string) ([]byte, error) {
 	args = append([]string{"-c", "safe.directory=*", "-c", "core.quotePath=false"}, args...)
 	cmd := exec.CommandContext(ctx, "git", args...)
 	cmd.Dir = g.Dir
-	cmd.Env = append(os.Environ(), "LC_ALL=C", "GIT_TERMINAL_PROMPT=0", "GIT_NO_LAZY_FETCH=1")
+	// Code that ran in the clone may have left replacements and grafts, by which
+	// git would show another commit than the one that was asked for.
+	cmd.Env = append(os.Environ(), "LC_ALL=C", "GIT_TERMINAL_PROMPT=0", "GIT_NO_LAZY_FETCH=1",
+		"GIT_NO_REPLACE_OBJECTS=1", "GIT_GRAFT_FILE="+os.DevNull)
 	var complaint bytes.Buffer
 	cmd.Stderr = &complaint
 	out, err := cmd.Output()

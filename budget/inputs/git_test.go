@@ -125,3 +125,19 @@ func TestHostileNames(t *testing.T) {
 	_, err := os.Stat(filepath.Join(r.dir, "stolen"))
 	assert.ErrorIs(t, err, os.ErrNotExist)
 }
+
+// What ran in the clone may have left a replacement behind, by which git would
+// show its own commit in the place of the one that was asked for.
+func TestReplacementsDoNotCount(t *testing.T) {
+	r := newRepo(t)
+	genuine := r.commit("budgetcheck.toml", "limit = 1")
+	forged := r.commit("budgetcheck.toml", "limit = 1000")
+	r.run("replace", genuine, forged)
+	g, err := inputs.OpenGit(ctx, r.dir)
+	require.NoError(t, err)
+	tree, err := g.Tree(ctx, genuine)
+	require.NoError(t, err)
+	data, err := g.Blob(ctx, tree[0])
+	require.NoError(t, err)
+	assert.Equal(t, "limit = 1", string(data))
+}
