@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"path"
+	"slices"
 	"strings"
 
 	"budgetcheck/budget"
@@ -143,31 +144,20 @@ func (c *change) by(ctx context.Context, policy *budget.Policy) (*budget.Stateme
 	if err := c.series(ctx, l); err != nil {
 		return nil, err
 	}
-	head, err := l.weighAll(c.in.head, "head", nil)
+	about := budget.Case{Branch: c.subject.Branch, Pull: c.subject.Pull, Jobs: c.in.job, HeadCommit: c.subject.Head, BaseCommit: c.tip, Now: c.now,
+		PolicySource: c.source(), Adoption: c.adoption()}
+	err := l.sides(&about, c.in.head, c.in.base, "")
 	if err != nil {
 		return nil, err
 	}
-	unread := l.unread
-	base, err := l.weighAll(c.in.base, "base", nil)
-	if err != nil {
-		return nil, err
-	}
-	for _, f := range l.unread[len(unread):] {
-		l.notes = append(l.notes, f.String())
-	}
-	l.notes = append(l.notes, l.missing...) // which rulings tell whether anything is due
 	if policy == c.policy {
-		tellFindings(c.s.err, l, head, base)
+		tellFindings(c.s.err, l, about.Head, about.Base)
 	}
-	commits, err := readCommits(ctx, c.repo, c.subject.Head, c.mergeBase, head, base)
-	if err != nil {
+	if about.Commits, err = readCommits(ctx, c.repo, c.subject.Head, c.mergeBase, about.Head, about.Base); err != nil {
 		return nil, err
 	}
-	return policy.Judge(budget.Case{
-		Branch: c.subject.Branch, Pull: c.subject.Pull, Jobs: c.in.job, HeadCommit: c.subject.Head, BaseCommit: c.tip, Now: c.now,
-		PolicySource: c.source(), Head: head, Base: base, Unread: unread, Commits: commits, Adoption: c.adoption(),
-		Notes: append(c.notes, l.notes...),
-	}), nil
+	about.Notes = slices.Concat(c.notes, l.notes)
+	return policy.Judge(about), nil
 }
 
 // source says which policy ruled.

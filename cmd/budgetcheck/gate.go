@@ -52,26 +52,15 @@ func (o *options) judge(s streams) (*budget.Statement, error) {
 	if err := l.readSeries(o); err != nil {
 		return nil, err
 	}
-	head, err := l.weighAll(o.head, "-head", nil)
-	if err != nil {
+	c := budget.Case{Branch: o.branch, Pull: o.pull, Jobs: o.job, HeadCommit: o.commit, BaseCommit: o.baseCommit, Now: now,
+		PolicySource: strings.Join(policy.Files, " and ")}
+	if err := l.sides(&c, o.head, o.base, "-"); err != nil {
 		return nil, err
 	}
-	unread := l.unread
-	base, err := l.weighAll(o.base, "-base", nil)
-	if err != nil {
-		return nil, err
-	}
-	for _, f := range l.unread[len(unread):] {
-		l.notes = append(l.notes, f.String())
-	}
-	l.notes = append(l.notes, l.missing...) // which rulings tell whether anything is due
-	tellFindings(s.err, l, head, base)
-	commits := l.commits(o, head, base)
-	return policy.Judge(budget.Case{
-		Branch: o.branch, Pull: o.pull, Jobs: o.job, Commits: commits, HeadCommit: o.commit, BaseCommit: o.baseCommit, Now: now,
-		PolicySource: strings.Join(policy.Files, " and "),
-		Head:         head, Base: base, Unread: unread, Notes: l.notes,
-	}), nil
+	tellFindings(s.err, l, c.Head, c.Base)
+	c.Commits = l.commits(o, c.Head, c.Base)
+	c.Notes = l.notes
+	return policy.Judge(c), nil
 }
 
 // tellFindings lists what is wrong in series and records, file by file. It

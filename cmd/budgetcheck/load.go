@@ -175,6 +175,23 @@ func (l *loader) weighAll(globs []string, what string, see func(*record.Reader, 
 	return parts, err
 }
 
+// sides weighs the records of both sides into a case. dash is what stands
+// before the names of the globs where they were given: as flags, or as inputs.
+func (l *loader) sides(c *budget.Case, head, base []string, dash string) (err error) {
+	if c.Head, err = l.weighAll(head, dash+"head", nil); err != nil {
+		return err
+	}
+	c.Unread = l.unread
+	if c.Base, err = l.weighAll(base, dash+"base", nil); err != nil {
+		return err
+	}
+	for _, f := range l.unread[len(c.Unread):] {
+		l.notes = append(l.notes, f.String())
+	}
+	l.notes = append(l.notes, l.missing...) // which rulings tell whether anything is due
+	return nil
+}
+
 // without is the error without the file's name, which the finding says already.
 func without(err error, path string) string {
 	var failed *fs.PathError
