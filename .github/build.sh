@@ -9,5 +9,5 @@ out=$1
 mkdir -p "$(dirname "$out")"
 out=$(cd "$(dirname "$out")" && pwd)/$(basename "$out")
 cd "$(dirname "${BASH_SOURCE[0]}")/.."
-CGO_ENABLED=0 go build -trimpath -buildvcs=false -ldflags '-s -w -buildid=' -o "$out" ./cmd/budgetcheck
+CGO_ENABLED=0 GOWORK=off go build -trimpath -buildvcs=false -ldflags '-s -w -buildid=' -o "$out" ./cmd/budgetcheck
 [ -z "${GITHUB_OUTPUT:-}" ] || printf 'program=%s\n' "$out" >> "$GITHUB_OUTPUT"

@@ -27,7 +27,7 @@ func (p *Policy) examine(c *Case, st *standing, head, base []*footprint.Run) {
 	attempts(head)
 	copies(slices.Concat(head, base))
 	countedTwice(slices.Concat(head, base))
-	metersOfBase(head, base)
+	metersOfBase(head, base, c.brokenBase())
 }
 
 // examineFacts checks job, stage, sites and machines against the policy.
@@ -151,7 +151,7 @@ func copies(runs []*footprint.Run) {
 				continue
 			}
 			if other := first[part.Digest]; other != nil {
-				d := footprint.Doubt{Refutes: true, Reason: fmt.Sprintf("%s and %s have the same energy lines under different names", other.File, part.File)}
+				d := footprint.Doubt{Reason: fmt.Sprintf("%s and %s have the same energy lines under different names", other.File, part.File)}
 				of[part.Digest].Doubt(d)
 				if of[part.Digest] != r {
 					r.Doubt(d)
@@ -164,33 +164,54 @@ func copies(runs []*footprint.Run) {
 }
 
 // metersOfBase asks of head parts the meters that base runs of the same job
-// and machine had, where the policy does not say how many there are.
-func metersOfBase(head, base []*footprint.Run) {
-	type key struct{ job, stage, machine string }
+// and machine had, where the policy does not say how many there are: those of
+// the same part, or of all parts where base runs were not cut like that. broken
+// is a base record that cannot be read; what meters it had is not known.
+func metersOfBase(head, base []*footprint.Run, broken string) {
+	type key struct{ job, stage, machine, part string }
+	const whole = "\x00" // no part is called so
 	seen := map[key]map[string]bool{}
 	for _, r := range base {
 		for _, part := range r.Pieces {
-			k := key{r.Job, r.Stage, part.Open.Machine}
-			if seen[k] == nil {
-				seen[k] = map[string]bool{}
-			}
-			for _, m := range part.Meters {
-				seen[k][m.Name] = true
+			for _, name := range []string{part.Open.Part, whole} {
+				note(seen, key{r.Job, r.Stage, part.Open.Machine, name}, part)
 			}
 		}
 	}
 	for _, r := range head {
 		for _, part := range r.Pieces {
-			if m := part.Facts.Machine; m != nil && m.Meters > 0 || part.Averaged {
+			if m := part.Facts.Machine; m != nil && m.Meters > 0 {
 				continue
 			}
-			names := names(seen[key{r.Job, r.Stage, part.Open.Machine}])
-			missing := slices.DeleteFunc(names, func(name string) bool {
-				return name == "used" || slices.ContainsFunc(part.Meters, func(m footprint.Meter) bool { return m.Name == name })
-			})
-			if len(missing) > 0 {
+			if broken != "" {
+				r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("the meters of %s cannot be compared: base record %s cannot be read, and the machine declares no meters", part.File, broken)})
+			}
+			k := key{r.Job, r.Stage, part.Open.Machine, part.Open.Part}
+			if seen[k] == nil {
+				k.part = whole
+			}
+			if missing := lacking(part, seen[k]); len(missing) > 0 {
 				r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("meter missing: %s has no %s, which base runs have", part.File, strings.Join(missing, ", "))})
 			}
 		}
 	}
+}
+
+func note[K comparable](seen map[K]map[string]bool, k K, part *footprint.Part) {
+	if seen[k] == nil {
+		seen[k] = map[string]bool{}
+	}
+	if part.Averaged { // a total is of no meter
+		return
+	}
+	for _, m := range part.Meters {
+		seen[k][m.Name] = true
+	}
+}
+
+// lacking are the meters that the part does not have.
+func lacking(part *footprint.Part, wanted map[string]bool) []string {
+	return slices.DeleteFunc(names(wanted), func(name string) bool {
+		return !part.Averaged && slices.ContainsFunc(part.Meters, func(m footprint.Meter) bool { return m.Name == name })
+	})
 }

@@ -176,7 +176,7 @@ func TestCopies(t *testing.T) {
 		s := sceneOf(night(), night(changes...))
 		checkDoubt(t, s, "copy.ndjson", "night.ndjson", "have the same energy lines")
 		s.policy = edit(t, plain, `"150 g"`, `"50 g"`)
-		assert.Equal(t, budget.Unproven, ruling(t, s.judge(t), "one training").State, "a copy proves nothing")
+		assert.Equal(t, budget.Over, ruling(t, s.judge(t), "one training").State, "either alone passes the limit: adding a copy is no way out")
 	}
 	checkFine(t, sceneOf(night(), night(two, scaled(1.001))), "another run")
 

@@ -94,7 +94,7 @@ func doubtAll(uses []use, reason string) {
 	for _, u := range uses {
 		if !slices.Contains(told, u.run) {
 			told = append(told, u.run)
-			u.run.Doubt(footprint.Doubt{Reason: reason, Refutes: true})
+			u.run.Doubt(footprint.Doubt{Reason: reason})
 		}
 	}
 }

@@ -24,9 +24,23 @@ type Case struct {
 
 	Head, Base []*footprint.Part // weighed by the same policy
 	Unread     []finding.Finding // head files that could not be read at all
+	UnreadBase []finding.Finding // base files that could not be read at all
 	Commits    *Commits          // nil where no repository is at hand
 	Adoption   bool              // the target has no policy yet: this is the head's, and the gate is open
 	Notes      []string          // what the reading of files has to say
+}
+
+// brokenBase is a base record of which nothing is known; "" if all could be read.
+func (c *Case) brokenBase() string {
+	for _, f := range c.UnreadBase {
+		return f.File
+	}
+	for _, part := range c.Base {
+		if !part.Opened() {
+			return part.File
+		}
+	}
+	return ""
 }
 
 // Judge applies the policy to one change.
@@ -40,7 +54,7 @@ func (p *Policy) Judge(c Case) *Statement {
 	j := judgement{policy: p, c: &c, s: s, standing: newStanding(p, &c), stray: stray}
 	p.label(base, "base", j.standing)
 	p.label(head, "head", j.standing)
-	s.Runs = slices.Concat([]*footprint.Run{}, base, head)
+	s.Runs = append(append([]*footprint.Run{}, base...), head...)
 	head, notes := j.standing.touched(head)
 	s.note(notes...)
 	s.note(j.standing.noteBase(base)...)

@@ -148,7 +148,7 @@ func TestPartsOnTwoCommits(t *testing.T) {
 	h, base := started(t)
 	head := h.commit("tide/train.py", "epochs = 12\n")
 	two := func(name, commit string) sketch {
-		return night(called(name+".ndjson", "n1"), of(commit), func(s *sketch) { s.open.Part, s.open.Parts, s.open.Host = name, 2, "mole-"+name })
+		return night(called(name+".ndjson", "n1"), of(commit), func(s *sketch) { s.open.Part, s.open.Parts, s.open.Host = name, 2, "mole-"+name }, scaled(map[string]float64{"1": 0.6, "2": 0.5}[name]))
 	}
 	checkDoubt(t, h.change(onlyTraining(t), head, base, []string{base}, two("1", head), two("2", base)), "with one voice")
 }

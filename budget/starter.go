@@ -87,6 +87,9 @@ func (s *Starter) place(part *footprint.Part) {
 	}
 	m := &s.Machines[n]
 	m.Units = max(m.Units, o.Reserved)
+	if part.Averaged { // a total is of no meter
+		return
+	}
 	if o.Reserved > 0 {
 		m.perUnit = max(m.perUnit, float64(len(part.Meters))/o.Reserved)
 	} else { // the whole machine: all its meters are there

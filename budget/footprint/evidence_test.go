@@ -46,11 +46,15 @@ func TestMetersMissing(t *testing.T) {
 	}
 }
 
-// TestMetersOfUsed: a total has no meters, so that none can be missing.
+// TestMetersOfUsed: a total is of no meter. Where the machine has meters, they
+// are missing; else one used line could stand in for all of them.
 func TestMetersOfUsed(t *testing.T) {
 	f := plain(flat(400))
-	f.Machine.Meters = 4
 	assert.Empty(t, open(t).used(0, hour, 1, true).close(hour).run(f, method).Doubts)
+	f.Machine.Meters = 4
+	doubts := open(t).used(0, hour, 1, true).close(hour).run(f, method).Doubts
+	require.Len(t, doubts, 1)
+	assert.Contains(t, doubts[0].Reason, "meter missing: run.ndjson has 0 of the 4 meters")
 }
 
 // TestMetersOfOddMachines: shares of units that no float holds exactly ask for

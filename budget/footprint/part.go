@@ -217,7 +217,7 @@ func (w *weighing) finish(names []string) {
 	p.Digest = w.hash.sum()
 	switch {
 	case w.total != nil && len(names) > 0:
-		p.doubt(Doubt{Reason: fmt.Sprintf("two accounts of one run: %s has used lines and lines of meters", p.File), Refutes: true})
+		p.doubt(Doubt{Reason: fmt.Sprintf("two accounts of one run: %s has used lines and lines of meters", p.File)})
 	case w.total != nil:
 		w.line = w.totals
 		w.total.line = &w.line

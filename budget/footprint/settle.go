@@ -105,9 +105,13 @@ func (w *weighing) plausible() {
 	if m == nil || len(p.Meters) == 0 {
 		return
 	}
-	if want := p.metersWanted(); !p.Averaged && float64(len(p.Meters)) < want {
-		p.doubt(Doubt{Reason: fmt.Sprintf("meter missing: %s has %d of the %v meters of machine %s", p.File, len(p.Meters), want, m.Name),
-			Observed: float64(len(p.Meters)), Limit: want, Unit: "meters"})
+	have := len(p.Meters)
+	if p.Averaged { // a total is of no meter
+		have = 0
+	}
+	if want := p.metersWanted(); float64(have) < want {
+		p.doubt(Doubt{Reason: fmt.Sprintf("meter missing: %s has %d of the %v meters of machine %s", p.File, have, want, m.Name),
+			Observed: float64(have), Limit: want, Unit: "meters"})
 	}
 	if m.Idle == nil || p.span() == 0 {
 		return

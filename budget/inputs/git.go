@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"os"
 	"os/exec"
+	"slices"
 	"strings"
 )
 
@@ -36,7 +37,7 @@ func (g *Git) run(ctx context.Context, args ...string) ([]byte, error) {
 	cmd.Dir = g.Dir
 	// Code that ran in the clone may have left replacements and grafts, by which
 	// git would show another commit than the one that was asked for.
-	cmd.Env = append(os.Environ(), "LC_ALL=C", "GIT_TERMINAL_PROMPT=0", "GIT_NO_LAZY_FETCH=1",
+	cmd.Env = append(withoutInputs(os.Environ()), "LC_ALL=C", "GIT_TERMINAL_PROMPT=0", "GIT_NO_LAZY_FETCH=1",
 		"GIT_NO_REPLACE_OBJECTS=1", "GIT_GRAFT_FILE="+os.DevNull)
 	var complaint bytes.Buffer
 	cmd.Stderr = &complaint
@@ -46,6 +47,12 @@ func (g *Git) run(ctx context.Context, args ...string) ([]byte, error) {
 		return nil, fmt.Errorf("git: %s: %w", strings.TrimSpace(complaint.String()), ErrUnknown)
 	}
 	return out, err
+}
+
+// withoutInputs is the environment without the inputs of the action: git needs
+// no token for what is asked here.
+func withoutInputs(env []string) []string {
+	return slices.DeleteFunc(env, func(v string) bool { return strings.HasPrefix(v, "INPUT_") })
 }
 
 // plain refuses names that git could take for an option or an expression.
@@ -114,7 +121,11 @@ func (g *Git) tip(ctx context.Context, ref string) (string, error) {
 	if err := plain(ref); err != nil {
 		return "", err
 	}
-	for _, name := range []string{"refs/remotes/origin/" + ref, "refs/heads/" + ref, ref} {
+	candidates := []string{"refs/remotes/origin/" + ref, "refs/heads/" + ref}
+	if FullID(ref) { // any other bare name could be a tag that is called like the branch
+		candidates = []string{ref}
+	}
+	for _, name := range candidates {
 		if out, err := g.run(ctx, "rev-parse", "--verify", "--quiet", name+"^{commit}"); err == nil {
 			return strings.TrimSpace(string(out)), nil
 		}

@@ -2,6 +2,7 @@ package record
 
 import (
 	"fmt"
+	"strconv"
 
 	"budgetcheck/budget/finding"
 	"budgetcheck/budget/unit"
@@ -60,6 +61,9 @@ func (o *object) open() *Open {
 	}
 	if op.Parts > 1 && op.Part == "" {
 		o.fail(`"parts" is above 1 but "part" is missing`, "say which part this is")
+	}
+	if n, err := strconv.Atoi(op.Part); err == nil && n > op.Parts {
+		o.fail(fmt.Sprintf("\"part\" is %d of %d", n, op.Parts), "write in parts how many parts there are in all")
 	}
 	if o.has("pull") {
 		op.Pull = o.whole("pull", 1)

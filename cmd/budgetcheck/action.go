@@ -90,6 +90,7 @@ func (a *actionRun) judge() (*budget.Statement, error) {
 		return nil, err
 	}
 	a.posting.Pull, a.posting.Commit = a.subject.CommentOn(), a.subject.Head
+	a.posting.Name = a.subject.Called(a.in.name)
 	repo := inputs.Either{}
 	if clone, err := inputs.OpenGit(ctx, "."); err == nil {
 		repo = append(repo, clone)
@@ -119,6 +120,7 @@ func (a *actionRun) readSubject(ctx context.Context) (github.Subject, error) {
 	if subject, err = subject.With(a.in.branch, a.in.pull, a.in.commit); err != nil {
 		return github.Subject{}, err
 	}
+	a.posting.Commit = subject.Head // what cannot be completed is posted there as unknown
 	return a.host.Complete(ctx, subject)
 }
 
@@ -164,7 +166,11 @@ func (a *actionRun) post() error {
 			return err
 		}
 	}
-	notices := a.host.Post(ctx, a.posting)
+	host, err := github.NewHost(github.FromEnvironment(a.s.getenv, a.in.token)) // with all its patience
+	if err != nil {
+		return err
+	}
+	notices := host.Post(ctx, a.posting)
 	return errors.Join(a.runner.Tell(notices), a.runner.Annotate(a.posting))
 }
 

@@ -45,7 +45,7 @@ func fetch(t *testing.T, pins, served string, env ...string) (output, log string
 	defer server.Close()
 	dir := filepath.Join(t.TempDir(), "a folder")
 	script := text(t, filepath.Join(start, "../../.github/fetch.sh"))
-	write(t, dir, map[string]string{".github/fetch.sh": script, ".github/release.sha256": pins, "output": "", "temp/x": ""})
+	write(t, dir, map[string]string{".github/fetch.sh": script, ".github/release.sha256": pins, "go.mod": "module budgetcheck\n\ngo 1.26.8\n", "output": "", "temp/x": ""})
 	tool(t, "curl")
 	cmd := exec.Command("bash", filepath.Join(dir, ".github/fetch.sh"))
 	cmd.Env = append(os.Environ(), "RUNNER_OS=Linux", "RUNNER_ARCH=X64", "RUNNER_TEMP="+filepath.Join(dir, "temp"), "GITHUB_SERVER_URL="+server.URL,
@@ -98,7 +98,7 @@ func TestFetchOfNothing(t *testing.T) {
 	} {
 		output, log, asked, err := fetch(t, c.pins, c.served, c.env...)
 		require.NoError(t, err, "%s: %s", name, log)
-		assert.Empty(t, output, name)
+		assert.Equal(t, "go=1.26.8\n", output, "%s: no program, and what to build one with", name)
 		assert.Len(t, asked, c.asked, name)
 		assert.Contains(t, log, "building from source", name)
 	}

@@ -101,10 +101,7 @@ func (c *change) policies(ctx context.Context) (err error) {
 	if c.headFiles, err = c.policyFiles(ctx, c.head); err != nil {
 		return err
 	}
-	inForce := c.files
-	if c.adoption() {
-		inForce = c.headFiles
-	}
+	inForce := c.policyInForce()
 	if len(inForce) == 0 {
 		return fmt.Errorf("there is no policy %s on branch %s nor in this change; budgetcheck init writes one", strings.Join(c.in.policy, ", "), c.subject.Branch)
 	}
@@ -118,7 +115,34 @@ func (c *change) policies(ctx context.Context) (err error) {
 		return fmt.Errorf("the policy at %s cannot be used; mend it there:\n%s", at, strings.Join(found, "\n"))
 	}
 	c.policy, c.headPolicy = policy, policy
+	return c.absent()
+}
+
+// absent tells of policy files that are named and not in force: budgets that
+// drop out must not do so in silence.
+func (c *change) absent() error {
+	named := func(files []budget.PolicyFile, name string) bool {
+		return slices.ContainsFunc(files, func(f budget.PolicyFile) bool { return f.Name == name })
+	}
+	for _, name := range c.in.policy {
+		name = path.Clean(name)
+		switch {
+		case named(c.policyInForce(), name):
+		case named(c.headFiles, name):
+			c.notes = append(c.notes, fmt.Sprintf("the policy %s is new in this change and takes effect after merge", name))
+		default:
+			return fmt.Errorf("there is no policy %s on branch %s nor in this change; mend the input policy", name, c.subject.Branch)
+		}
+	}
 	return nil
+}
+
+// policyInForce is the target's policy, or the head's where it has none yet.
+func (c *change) policyInForce() []budget.PolicyFile {
+	if c.adoption() {
+		return c.headFiles
+	}
+	return c.files
 }
 
 // policyFiles reads the policy files of a commit that are there.

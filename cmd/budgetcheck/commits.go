@@ -2,6 +2,7 @@ package main
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"slices"
 
@@ -28,13 +29,19 @@ func readCommits(ctx context.Context, repo inputs.Repository, head, mergeBase st
 			return nil, fmt.Errorf("the merge base cannot be read: %w", err)
 		}
 	}
+	asked := map[string]bool{head: true}
 	for _, p := range slices.Concat(parts...) {
 		name := p.Open.Commit
-		if _, known := c.Named[name]; known || !inputs.FullID(name) || name == head || len(c.Named) == mostCommits {
+		if asked[name] || !inputs.FullID(name) || len(asked) > mostCommits {
 			continue
 		}
-		if t, err := repo.Tree(ctx, name); err == nil {
+		asked[name] = true
+		t, err := repo.Tree(ctx, name)
+		switch {
+		case err == nil:
 			c.Named[name] = t
+		case !errors.Is(err, inputs.ErrUnknown):
+			return nil, fmt.Errorf("commit %s, which %s names, cannot be looked up: %w", name, p.File, err)
 		}
 	}
 	return c, nil

@@ -185,7 +185,8 @@ func (l *loader) sides(c *budget.Case, head, base []string, dash string) (err er
 	if c.Base, err = l.weighAll(base, dash+"base", nil); err != nil {
 		return err
 	}
-	for _, f := range l.unread[len(c.Unread):] {
+	c.UnreadBase = l.unread[len(c.Unread):]
+	for _, f := range c.UnreadBase {
 		l.notes = append(l.notes, f.String())
 	}
 	l.notes = append(l.notes, l.missing...) // which rulings tell whether anything is due

@@ -2,6 +2,7 @@ package github
 
 import (
 	"cmp"
+	"fmt"
 	"strings"
 )
 
@@ -58,6 +59,16 @@ func (s Subject) CommentOn() int {
 		return 0
 	}
 	return s.Pull
+}
+
+// Called is the name of the check and the comment. What is judged by the rules
+// of a branch that is not the default one, and for no pull request, must not
+// pass for the verdict on a pull request that has the same head.
+func (s Subject) Called(name string) string {
+	if s.Pull > 0 || s.Cause == eventGroup || s.Branch == s.DefaultBranch {
+		return name
+	}
+	return fmt.Sprintf("%s (%s)", cmp.Or(name, "budgetcheck"), s.Branch)
 }
 
 // With replaces what the event says by the action's inputs branch, pull and

@@ -1,6 +1,7 @@
 package github
 
 import (
+	"strings"
 	"testing"
 
 	"github.com/stretchr/testify/assert"
@@ -157,4 +158,20 @@ func TestCommentOn(t *testing.T) {
 	for _, s := range []Subject{stale, group, ofPush, ofTag} {
 		assert.Zero(t, s.CommentOn(), "%+v", s)
 	}
+}
+
+// A push to a topic branch has the same head as its pull request, and other
+// rules: it must not take the place of the pull request's check.
+func TestCalled(t *testing.T) {
+	for want, s := range map[string]Subject{
+		"budgetcheck":            {Cause: eventPull, Pull: 7, Branch: "main", DefaultBranch: "main"},
+		"budgetcheck (topic)":    {Cause: eventPush, Branch: "topic", DefaultBranch: "main"},
+		"gauges":                 {Cause: eventPush, Branch: "main", DefaultBranch: "main"},
+		"gauges (harbour/works)": {Cause: eventManual, Branch: "harbour/works", DefaultBranch: "main"},
+		"queue":                  {Cause: eventGroup, Branch: "works", DefaultBranch: "main"},
+	} {
+		name, _, _ := strings.Cut(want, " ")
+		assert.Equal(t, want, s.Called(name))
+	}
+	assert.Equal(t, "budgetcheck (topic)", Subject{Cause: eventPush, Branch: "topic", DefaultBranch: "main"}.Called(""))
 }
