@@ -120,7 +120,7 @@ func wrongName(name string) string {
 func shown(text string) string {
 	const most = 80
 	if len(text) > most {
-		return fmt.Sprintf("%q (cut, %d bytes)", text[:most], len(text))
+		return fmt.Sprintf("%+q (cut, %d bytes)", text[:most], len(text))
 	}
-	return strconv.Quote(text)
+	return strconv.QuoteToASCII(text)
 }
