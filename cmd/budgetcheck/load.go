@@ -32,7 +32,7 @@ type loader struct {
 	notes   []string
 }
 
-// policies reads the policy files. Findings are an error: nothing must be
+// readPolicies reads the policy files. Findings are an error: nothing must be
 // judged by a policy that is not understood.
 func readPolicies(paths []string) (*budget.Policy, []finding.Finding, error) {
 	var files []budget.PolicyFile
