@@ -86,15 +86,15 @@ func (f Facts) reservation(reserved float64) float64 {
 
 // Doubt is a reason why a run's evidence does not carry a ruling.
 type Doubt struct {
-	Reason   string
-	Observed float64 // with Limit and Unit, where the doubt is about a number
-	Limit    float64
-	Unit     string // empty where it is not
+	Reason   string  `json:"reason"`
+	Observed float64 `json:"observed,omitempty"` // with Limit and Unit, where the doubt is about a number
+	Limit    float64 `json:"limit,omitempty"`
+	Unit     string  `json:"unit,omitempty"` // empty where it is not
 	// Refutes: the measured energy itself is in question, so that it does not
 	// prove a limit passed.
-	Refutes bool
+	Refutes bool `json:"refutes,omitempty"`
 	// Price: only the intensity is in question; energy figures stand.
-	Price bool
+	Price bool `json:"price,omitempty"`
 	// Missing: a record that is still to come would settle the doubt.
-	Missing bool
+	Missing bool `json:"missing,omitempty"`
 }

@@ -6,6 +6,7 @@ import (
 	"io"
 
 	"budgetcheck/budget/finding"
+	"budgetcheck/budget/grid"
 	"budgetcheck/budget/record"
 	"budgetcheck/budget/unit"
 )
@@ -42,6 +43,7 @@ type Part struct {
 	Open    record.Open // zero where the record has no readable open line
 	End     unit.Instant
 	Outcome record.Outcome // failed where there is no close line
+	Closed  bool           // there is a close line
 	Facts   Facts
 	Meters  []Meter
 	Averaged,
@@ -51,6 +53,11 @@ type Part struct {
 	Notes    []string
 	Doubts   []Doubt
 	Digest   string // hash of the energy lines; empty if there are none
+
+	// Of a part that comes from the books: the account that it is charged to,
+	// and the hash of its inputs where that was known.
+	Account string
+	Inputs  string
 
 	metered   unit.Energy // at the meters: measured and filled
 	measured  unit.Sum[unit.Energy]
@@ -84,11 +91,14 @@ type proven struct {
 // random are the variances of the part's independent errors.
 type random struct{ facility, mass float64 }
 
-// Hour is the facility energy used in a span that starts at From: an hour of
-// UTC, cut at the steps of the series where those are finer.
+// Hour is the facility energy used in a span that starts at From, an hour of
+// UTC cut at the steps of the series where those are finer, and what it was
+// charged with. G is nil where the span has no price.
 type Hour struct {
 	From unit.Instant `json:"from"`
 	KWh  unit.Energy  `json:"kwh"`
+	G    *unit.Mass   `json:"g,omitempty"`  // operational
+	By   grid.Source  `json:"by,omitempty"` // where the price comes from; absent: from the series
 }
 
 // Opened tells whether the record has a readable open line.
@@ -157,7 +167,7 @@ func (w *weighing) take(l *record.Line) {
 	case record.KindWork:
 		p.Work = l.Work
 	case record.KindClose:
-		p.Outcome = l.Close.Outcome
+		p.Outcome, p.Closed = l.Close.Outcome, true
 	}
 }
 

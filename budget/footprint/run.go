@@ -147,7 +147,7 @@ func Combine(parts []*Part, m Method) *Run {
 		r.Doubts = append(r.Doubts, p.Doubts...)
 		r.Parts = append(r.Parts, p.show())
 		if p.Findings.Len() > 0 {
-			r.Doubt(Doubt{Reason: fmt.Sprintf("%d lines of %s cannot count, first %s", p.Findings.Len(), p.File, p.Findings.First())})
+			r.Doubt(p.unreadable())
 		}
 	}
 	r.outcome()
@@ -156,6 +156,11 @@ func Combine(parts []*Part, m Method) *Run {
 	r.energies(m)
 	r.masses(m)
 	return r
+}
+
+// unreadable is the doubt about a record of which some lines cannot count.
+func (p *Part) unreadable() Doubt {
+	return Doubt{Reason: fmt.Sprintf("%d lines of %s cannot count, first %s", p.Findings.Len(), p.File, p.Findings.First())}
 }
 
 func (p *Part) zone() string {
@@ -254,6 +259,14 @@ func (r *Run) progress() {
 func (r *Run) Commit() string {
 	return shared(r.Pieces, func(p *Part) string { return p.Open.Commit })
 }
+
+// Booked is the hash of the run's inputs with which all its parts were booked;
+// "" if it is not known.
+func (r *Run) Booked() string { return shared(r.Pieces, func(p *Part) string { return p.Inputs }) }
+
+// Account is the account that the run was booked to; "" if it is not in the
+// books.
+func (r *Run) Account() string { return shared(r.Pieces, func(p *Part) string { return p.Account }) }
 
 // scope tells whose work a work line counts.
 func scope(w *record.Work) string {

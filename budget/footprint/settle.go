@@ -54,7 +54,7 @@ func (w *weighing) settle() {
 		facility.Add(fac)
 		s.add(b.price, fac, unit.Energy(float64(b.proven.Value().Energy())/c.share*c.pue))
 		p.expected += float64(b.price.I.Of(fac)) * float64(b.price.U)
-		p.hour(b.from, fac)
+		p.hour(b.from, fac, b.price)
 	}
 	p.metered, p.unmetered, p.facility = metered.Value(), unmetered.Value(), facility.Value()
 	p.machine = unit.Energy(float64(p.metered)/c.share) + p.unmetered
@@ -73,10 +73,15 @@ func (p *Part) reachEnd(t *timeline) {
 }
 
 // hour notes the energy of a bucket. Buckets without energy are left out.
-func (p *Part) hour(from unit.Instant, e unit.Energy) {
-	if e > 0 {
-		p.hours = append(p.hours, Hour{from, e})
+func (p *Part) hour(from unit.Instant, e unit.Energy, price grid.Price) {
+	if e <= 0 {
+		return
 	}
+	h := Hour{From: from, KWh: e, By: price.Source}
+	if price.Known {
+		h.G = known(price.I.Of(e))
+	}
+	p.hours = append(p.hours, h)
 }
 
 // settleFacts adds what follows from the declared facts alone.
@@ -84,16 +89,8 @@ func (p *Part) settleFacts() {
 	if s := p.Facts.Site; s != nil && s.Market != nil {
 		p.market = s.Market.Of(p.facility)
 	}
-	m := p.Facts.Machine
-	if m == nil {
-		return
-	}
-	if m.Embodied != nil {
+	if m := p.Facts.Machine; m != nil && m.Embodied != nil {
 		p.embodied = unit.Mass(float64(*m.Embodied) * p.span().Seconds() / m.Lifetime.Seconds() * p.reservation())
-	}
-	if p.Open.Reserved > m.Units {
-		p.doubt(Doubt{Reason: fmt.Sprintf("%s reserves %v of the %v units of machine %s", p.File, p.Open.Reserved, m.Units, m.Name),
-			Observed: p.Open.Reserved, Limit: m.Units, Unit: "units"})
 	}
 }
 
@@ -102,7 +99,14 @@ func (p *Part) settleFacts() {
 func (w *weighing) plausible() {
 	p := w.part
 	m := p.Facts.Machine
-	if m == nil || len(p.Meters) == 0 {
+	if m == nil {
+		return
+	}
+	if p.Open.Reserved > m.Units {
+		p.doubt(Doubt{Reason: fmt.Sprintf("%s reserves %v of the %v units of machine %s", p.File, p.Open.Reserved, m.Units, m.Name),
+			Observed: p.Open.Reserved, Limit: m.Units, Unit: "units"})
+	}
+	if len(p.Meters) == 0 {
 		return
 	}
 	have := len(p.Meters)

@@ -192,21 +192,13 @@ func (r *Run) prove(embodied unit.Mass) {
 	r.Proven = Proven{total.Value(), facility.Value()}
 }
 
-// hours merges the parts' hours.
+// hours lists the parts' hours. Those of two parts stay apart, for their zones
+// may differ.
 func (r *Run) hours() {
 	for _, p := range r.Pieces {
 		r.Hours = append(r.Hours, p.hours...)
 	}
 	slices.SortStableFunc(r.Hours, func(a, b Hour) int { return cmp.Compare(a.From, b.From) })
-	merged := r.Hours[:0]
-	for _, h := range r.Hours {
-		if n := len(merged); n > 0 && merged[n-1].From == h.From {
-			merged[n-1].KWh += h.KWh
-			continue
-		}
-		merged = append(merged, h)
-	}
-	r.Hours = merged
 }
 
 func (r *Run) energyTerms() {

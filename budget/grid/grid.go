@@ -60,6 +60,17 @@ func (s *Series) Span() (from, to unit.Instant) {
 // Steps are the intervals in order. The slice must not be changed.
 func (s *Series) Steps() []Interval { return s.steps }
 
+// Between are the intervals that touch the time from one moment to another. The
+// slice must not be changed; a nil series has none.
+func (s *Series) Between(from, to unit.Instant) []Interval {
+	if s == nil {
+		return nil
+	}
+	first := sort.Search(len(s.steps), func(n int) bool { return s.steps[n].To > from })
+	last := sort.Search(len(s.steps), func(n int) bool { return s.steps[n].From >= to })
+	return s.steps[first:max(first, last)]
+}
+
 // At is the intensity at t; ok is false in a hole and outside the span.
 func (s *Series) At(t unit.Instant) (i unit.Intensity, ok bool) {
 	n := s.after(t)

@@ -1,6 +1,11 @@
 package grid
 
-import "budgetcheck/budget/unit"
+import (
+	"fmt"
+	"slices"
+
+	"budgetcheck/budget/unit"
+)
 
 // Source tells where the price of a span of time comes from.
 type Source uint8
@@ -12,6 +17,23 @@ const (
 	FromAnnual                 // the site's annual mean, where the zone has no series
 	FromHole                   // in a hole of the series: Annual if Known, and only for a small share
 )
+
+var sourceWords = [...]string{"series", "expected", "annual", "hole"}
+
+func (s Source) String() string { return sourceWords[s] }
+
+// MarshalText writes the source as a word.
+func (s Source) MarshalText() ([]byte, error) { return []byte(s.String()), nil }
+
+// UnmarshalText reads a word.
+func (s *Source) UnmarshalText(text []byte) error {
+	n := slices.Index(sourceWords[:], string(text))
+	if n < 0 {
+		return fmt.Errorf("%q is no source of a price; write one of %v", text, sourceWords)
+	}
+	*s = Source(n)
+	return nil
+}
 
 // Price is what a kilowatt-hour is charged with over one span of time.
 type Price struct {
