@@ -18,7 +18,7 @@ func agree(t require.TestingT, s *scanner, line []byte) (fast bool) {
 	if !s.scan(line, &f) {
 		return false
 	}
-	want, meter, _, wrong := decode(line)
+	want, meter, _, wrong := decode(line, nil)
 	require.Nil(t, wrong, "%q", line)
 	got := Line{Kind: f.kind, At: f.at}
 	got.setReading(f.value, f.wrap)

@@ -10,7 +10,7 @@ import (
 
 // decode reads a line by the general path. meter and word are returned aside,
 // for the reader interns meters and counts unknown words.
-func decode(raw []byte) (l Line, meter, word string, wrong *finding.Finding) {
+func decode(raw []byte, fill func(*Open)) (l Line, meter, word string, wrong *finding.Finding) {
 	o := parseObject(raw)
 	if o.wrong != nil {
 		return l, "", "", o.wrong
@@ -19,7 +19,7 @@ func decode(raw []byte) (l Line, meter, word string, wrong *finding.Finding) {
 	l.Kind = kindOf(word)
 	switch l.Kind {
 	case KindOpen:
-		l.Open = o.open()
+		l.Open = o.open(fill)
 		l.At = l.Open.At
 	case KindPower:
 		l.At, meter = o.instant("at"), o.word("meter")
@@ -46,10 +46,11 @@ func decode(raw []byte) (l Line, meter, word string, wrong *finding.Finding) {
 	return l, meter, word, o.wrong
 }
 
-func (o *object) open() *Open {
+// open reads an open line; fill, which may be nil, fills in what it lacks.
+func (o *object) open(fill func(*Open)) *Open {
 	o.format()
 	op := &Open{
-		Run: o.word("run"), Attempt: 1, Part: o.label("part"), Parts: 1, Host: o.text("host"),
+		Run: o.text("run"), Part: o.label("part"), Host: o.text("host"),
 		Job: o.word("job"), Stage: o.text("stage"), At: o.instant("at"), Site: o.text("site"),
 		Machine: o.text("machine"), Commit: o.text("commit"), Branch: o.text("branch"),
 	}
@@ -59,14 +60,21 @@ func (o *object) open() *Open {
 	if o.has("parts") {
 		op.Parts = o.whole("parts", 1)
 	}
+	if o.has("pull") {
+		op.Pull = o.whole("pull", 1)
+	}
+	if fill != nil {
+		fill(op)
+	}
+	if op.Run == "" {
+		o.word("run")
+	}
+	op.Attempt, op.Parts = max(op.Attempt, 1), max(op.Parts, 1)
 	if op.Parts > 1 && op.Part == "" {
 		o.fail(`"parts" is above 1 but "part" is missing`, "say which part this is")
 	}
 	if n, err := strconv.Atoi(op.Part); err == nil && n > op.Parts {
 		o.fail(fmt.Sprintf("\"part\" is %d of %d", n, op.Parts), "write in parts how many parts there are in all")
-	}
-	if o.has("pull") {
-		op.Pull = o.whole("pull", 1)
 	}
 	if o.has("reserved") {
 		op.Reserved = o.number("reserved", "the number of units of the machine")

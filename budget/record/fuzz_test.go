@@ -95,7 +95,7 @@ func FuzzScanAgainstDecode(f *testing.F) {
 
 // sound checks the general path: what it takes is JSON, what it refuses is told.
 func sound(t *testing.T, line []byte) {
-	_, _, _, wrong := decode(line)
+	_, _, _, wrong := decode(line, nil)
 	if wrong == nil {
 		assert.True(t, json.Valid(line), "%q", line)
 		assert.True(t, bytes.HasPrefix(trim(line), []byte("{")), "%q", line)

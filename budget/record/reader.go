@@ -24,6 +24,8 @@ type Reader struct {
 	order    order
 	line     Line
 
+	fill     func(*Open) // nil: nothing is filled in
+
 	findings finding.List
 	unknown  finding.List
 	torn     int // number of a torn last line, 0 if none
@@ -43,6 +45,10 @@ func NewReader(r io.Reader, name string) (*Reader, error) {
 	rd.order.meters.byName = map[string]int{}
 	return rd, nil
 }
+
+// Fill has the open line completed before it is checked, by what the record's
+// surroundings tell: absent attempt and parts are 0 in it.
+func (r *Reader) Fill(with func(*Open)) { r.fill = with }
 
 // Close releases what decompression holds. It does not close the input, and it
 // never fails: what is wrong with the stream, Next has said.
@@ -170,7 +176,7 @@ func (r *Reader) read(raw []byte, whole bool) bool {
 		r.torn = r.no
 		return false
 	}
-	line, meter, word, wrong := decode(raw)
+	line, meter, word, wrong := decode(raw, r.fill)
 	if wrong != nil {
 		r.order.refused = r.order.refused || line.Kind == KindOpen
 		return r.refuse(wrong)

@@ -73,7 +73,7 @@ func TestSchemaAgreesWithTheReader(t *testing.T) {
 	same := func(line map[string]any) bool {
 		raw, err := json.Marshal(line)
 		require.NoError(t, err)
-		l, meter, _, wrong := decode(raw)
+		l, meter, _, wrong := decode(raw, nil)
 		taken := wrong == nil && l.Kind != KindUnknown && len(meter) <= MaxName
 		refused := valid(t, s, string(raw))
 		assert.Equal(t, taken, refused == nil, "%s\nreader: %v\nschema: %v", raw, wrong, refused)
