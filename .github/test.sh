@@ -14,6 +14,8 @@ install() {
   for tool in gcc git python3 curl shellcheck ip:iproute2; do # command, and package where it is called otherwise
     command -v "${tool%:*}" >/dev/null || missing+=("${tool#*:}")
   done
+  # The PostgreSQL server, whose programs Debian keeps off the path.
+  command -v initdb >/dev/null || compgen -G '/usr/lib/postgresql/*/bin/initdb' >/dev/null || missing+=(postgresql)
   [ ${#missing[@]} -eq 0 ] || debian "${missing[@]}"
   # The linter of workflows, and the runner that the action is tried on.
   program actionlint github.com/rhysd/actionlint/cmd/actionlint@v1.7.12
@@ -27,8 +29,12 @@ debian() {
   fi
   local sudo=""
   [ "$(id -u)" = 0 ] || sudo=sudo
+  case " $* " in *" postgresql "*) # the tests start a server of their own; the package shall start none
+    $sudo mkdir -p /etc/postgresql-common
+    echo 'create_main_cluster = false' | $sudo tee /etc/postgresql-common/createcluster.conf >/dev/null ;;
+  esac
   $sudo apt-get update
-  $sudo apt-get install -y --no-install-recommends "$@" libc6-dev ca-certificates
+  $sudo env DEBIAN_FRONTEND=noninteractive apt-get install -y --no-install-recommends "$@" libc6-dev ca-certificates
 }
 
 program() {
