@@ -7,6 +7,7 @@ import (
 	"slices"
 
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/record"
 )
 
 // Runs combines parts into runs, each part once, in order of start and name.
@@ -68,7 +69,27 @@ func (p *Policy) run(parts []*footprint.Part) *footprint.Run {
 	return r
 }
 
+// sameContent tells whether two parts tell of one record. A label that only
+// one of them has, for booking filled it in, is no difference.
 func sameContent(a, b *footprint.Part) bool {
 	return a.Digest == b.Digest && a.End == b.End && a.Outcome == b.Outcome && a.Findings.Len() == b.Findings.Len() &&
-		reflect.DeepEqual(a.Open, b.Open) && reflect.DeepEqual(a.Work, b.Work)
+		reflect.DeepEqual(bare(a.Open, b.Open), bare(b.Open, a.Open)) && reflect.DeepEqual(a.Work, b.Work)
+}
+
+// bare is the open line without those labels that the other does not have.
+func bare(o, other record.Open) record.Open {
+	if other.Commit == "" {
+		o.Commit = ""
+	}
+	if other.Branch == "" {
+		o.Branch = ""
+	}
+	if other.Pull == 0 {
+		o.Pull = 0
+	}
+	if len(o.Labels) == 0 {
+		o.Labels = nil
+	}
+	o.Parts = max(o.Parts, 1)
+	return o
 }

@@ -15,17 +15,26 @@ func (j *judgement) budgets() {
 		if !matches(b.Branch, j.c.Branch) {
 			continue
 		}
-		if b.Per != "run" {
-			r := b.ruling(j.c.Branch)
-			r.State, r.Reason = Unproven, fmt.Sprintf("not judged yet: this version keeps no books, which per = %q needs", b.Per)
-			j.rule(r)
+		v := j.judgeBudget(b)
+		if !v.due {
 			continue
 		}
-		if r, ok := j.perRun(b); ok {
-			j.rule(r)
-			j.account(b, r)
+		v = j.waive(b, v)
+		j.rule(v.ruling)
+		if v.account != nil {
+			j.s.Accounts = append(j.s.Accounts, *v.account)
 		}
+		j.s.Landings = append(j.s.Landings, v.landings...)
 	}
+}
+
+// judgeBudget judges one budget, without waivers.
+func (j *judgement) judgeBudget(b *Budget) verdictOn {
+	if b.Per != "run" {
+		return j.perPeriod(b)
+	}
+	r, due := j.perRun(b)
+	return verdictOn{ruling: r, account: j.accountPerRun(b, r), due: due}
 }
 
 // ruling is an empty ruling of the budget.
@@ -68,7 +77,7 @@ func (j *judgement) perRun(b *Budget) (worst Ruling, ok bool) {
 		case j.standing.unchanged(job):
 			r.State, r.Reason = Within, unchanged
 			take(r)
-		case job.Required && !j.satisfied(job):
+		case j.asked(job) && !j.satisfied(job):
 			r.State = Unproven
 			r.Reason, r.Missing = j.missing(job)
 			take(r)
@@ -112,6 +121,9 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 		r.State, r.Reason = Unproven, reason
 		return r
 	}
+	if run.Projection != nil && len(b.Limit.doubts(run)) == 0 {
+		return j.judgePilot(b, run)
+	}
 	a, known := b.Limit.of(run, j.policy.Method().Uncertainty)
 	if known {
 		j.settle(&r, b, a)
@@ -119,7 +131,7 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 	doubts := b.Limit.doubts(run)
 	if known && len(doubts) == 0 {
 		if r.State == Unproven {
-			r.Reason = "above the limit, but by less than its expanded uncertainty"
+			r.Reason = byLess
 		}
 		return r
 	}
@@ -162,7 +174,7 @@ func (j *judgement) settle(r *Ruling, b *Budget, a amount) {
 // share of the limit would be rounded.
 func (j *judgement) state(b *Budget, a amount) State {
 	st := decide(j.policy.Account.Decision, a.value, 2*a.u, b.Limit.base())
-	if st == Within && b.WarnAt != nil && a.value/b.Limit.base() > float64(*b.WarnAt) {
+	if st == Within && b.warned(a.value) {
 		return Near
 	}
 	return st
@@ -184,18 +196,18 @@ func decide(rule Decision, y, expanded, limit float64) State {
 	return Over
 }
 
-// account shows a mass budget as an account.
-func (j *judgement) account(b *Budget, r Ruling) {
+// accountPerRun shows a mass budget for each run; nil for other limits.
+func (j *judgement) accountPerRun(b *Budget, r Ruling) *AccountLine {
 	if b.Limit.Mass == nil {
-		return
+		return nil
 	}
-	a := AccountLine{Name: b.Name, Per: b.Per, Limit: *b.Limit.Mass, State: r.State}
+	a := &AccountLine{Name: b.Name, Per: b.Per, Limit: *b.Limit.Mass, State: r.State}
 	if r.Observed != nil {
 		m := unit.Mass(*r.Observed)
 		a.Change, a.Carried = &m, &m
 	}
 	a.Page = append(page(b, j.base, false), page(b, j.head, true)...)
-	j.s.Accounts = append(j.s.Accounts, a)
+	return a
 }
 
 // page lists the runs of one side by job and stage, at so much each.

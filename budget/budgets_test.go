@@ -1,7 +1,6 @@
 package budget_test
 
 import (
-	"strings"
 	"testing"
 
 	"github.com/stretchr/testify/assert"
@@ -105,23 +104,4 @@ func TestNothingToRuleOn(t *testing.T) {
 	s.policy = edit(t, s.policy, "name = \"score-tide\"\n", "name = \"score-tide\"\nrequired = true\n")
 	r := ruling(t, s.judge(t), "one scoring")
 	assert.Equal(t, []any{budget.Unproven, "score-tide", "job score-tide is required, and there is no head run of it"}, []any{r.State, r.Job, r.Reason})
-}
-
-// A rule that this version cannot judge is not passed over.
-func TestNotJudgedYet(t *testing.T) {
-	for _, per := range []string{"pull", "day", "week", "month", "quarter", "year", "release"} {
-		s := sceneOf(night())
-		s.policy = plain + "\n[[budget]]\nname = \"later\"\nlimit = \"1 t\"\nper = \"" + per + "\"\n"
-		st := s.judge(t)
-		r := ruling(t, st, "later")
-		assert.Equal(t, []any{budget.Unproven, per, budget.Closed}, []any{r.State, r.Per, st.Gate})
-		assert.Contains(t, r.Reason, "not judged yet")
-		assert.Nil(t, r.Observed)
-	}
-	s := sceneOf(night())
-	s.policy = plain + "\n[[waiver]]\nrule = \"one training\"\nreason = \"r\"\napproved_by = \"@quay-lead\"\nexpires = 2031-04-01\n"
-	st := s.judge(t)
-	assert.Equal(t, budget.Within, ruling(t, st, "one training").State)
-	want := "the waiver of \"one training\" (budgetcheck.toml:" + lineNumber(t, s.policy, "[[waiver]]") + ") is not applied yet"
-	assert.Contains(t, strings.Join(st.Notes, "\n"), want)
 }

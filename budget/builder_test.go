@@ -3,6 +3,7 @@ package budget_test
 import (
 	"bytes"
 	"encoding/json"
+	"fmt"
 	"slices"
 	"strconv"
 	"strings"
@@ -13,6 +14,7 @@ import (
 	"budgetcheck/budget"
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/grid"
+	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/record"
 	"budgetcheck/budget/unit"
 )
@@ -195,7 +197,42 @@ func (s sketch) text(t test) string {
 type scene struct {
 	policy, series string
 	head, base     []sketch
+	books          []booked
+	marks          []*ledger.Mark
+	keeps          bool        // there is a ledger, though nothing is in it
 	about          budget.Case // the rest
+}
+
+// booked is a record in the books.
+type booked struct {
+	sketch
+	account string
+	inputs  string
+}
+
+// bookedNights are runs on main, one a night, the last one `last` nights before the
+// head's.
+func bookedNights(n, last int, changes ...func(*sketch)) (list []booked) {
+	for back := last + n - 1; back >= last; back-- {
+		s := night(changes...)
+		s.open.Run = fmt.Sprintf("b%d", back)
+		s.open.At = two.Add(-unit.Duration(back) * unit.Day)
+		list = append(list, booked{sketch: s, account: "main"})
+	}
+	return list
+}
+
+// ledger books the records by the policy, each when it ended.
+func (s *scene) ledger(t test, p *budget.Policy, set *grid.Set) *ledger.Books {
+	read := &ledger.Books{Marks: s.marks}
+	for _, b := range s.books {
+		part := weigh(t, p, set, b.open.Run, b.text(t))
+		e, err := p.Entry(part, budget.Booking{Branch: b.account, Now: part.End})
+		require.NoError(t, err)
+		e.Inputs = b.inputs
+		read.Entries = append(read.Entries, e)
+	}
+	return ledger.Merge(read)
 }
 
 // sceneOf judges the head runs by plain, under steady.
@@ -212,6 +249,9 @@ func (s *scene) judge(t test) *budget.Statement {
 	}
 	for _, one := range s.base {
 		c.Base = append(c.Base, weigh(t, p, set, one.file, one.text(t)))
+	}
+	if len(s.books)+len(s.marks) > 0 || s.keeps {
+		c.Books = p.Books(s.ledger(t, p, set), set)
 	}
 	return p.Judge(c)
 }

@@ -9,9 +9,9 @@ import (
 	"time"
 
 	"github.com/bmatcuk/doublestar/v4"
-	"github.com/robfig/cron/v3"
 
 	"budgetcheck/budget/finding"
+	"budgetcheck/budget/forecast"
 	"budgetcheck/budget/unit"
 )
 
@@ -132,8 +132,8 @@ func (c checker) jobs(p *Policy) {
 
 func (c checker) timing(j *Job) {
 	if j.Schedule != "" {
-		if err := readSchedule(j.Schedule); err != nil {
-			c.refuse(j.Place, "schedule", `write five cron fields, like "15 2 * * *"`, "the schedule of job %s cannot be read (%v)", j.Name, err)
+		if _, err := forecast.ParseSchedule(j.Schedule); err != nil {
+			c.refuse(j.Place, "schedule", `write five cron fields, like "15 2 * * *"`, "the schedule of job %s cannot be read (%v)", j.Name, errors.Unwrap(err))
 		}
 	}
 	if j.Stretch != nil && (!(*j.Stretch >= 1) || math.IsInf(*j.Stretch, 0)) {
@@ -145,16 +145,6 @@ func (c checker) timing(j *Job) {
 	if j.ResumeKWh != nil && (!(*j.ResumeKWh >= 0) || math.IsInf(*j.ResumeKWh, 0)) {
 		c.refuse(j.Place, "resume_kwh", "write an energy in kWh from 0 up", "the resume_kwh of job %s is %v", j.Name, *j.ResumeKWh)
 	}
-}
-
-// readSchedule reads cron fields. A time zone that no fields follow makes
-// version 3.0.1 of the library panic.
-func readSchedule(text string) error {
-	if zone, _, fields := strings.Cut(text, " "); !fields && strings.Contains(zone, "TZ=") {
-		return errors.New("no fields follow the time zone")
-	}
-	_, err := cron.ParseStandard(text)
-	return err
 }
 
 func (c checker) known(p Place, what, name string, known []string) {
@@ -192,6 +182,16 @@ func (c checker) rules(p *Policy) {
 	for _, w := range p.Waivers {
 		if !slices.Contains(rules, w.Rule) {
 			c.refuse(w.Place, "rule", "name a budget or a regression of this policy"+nearest(w.Rule, rules), "the waiver names rule %q, which is not there", w.Rule)
+		}
+		for _, b := range p.Budgets {
+			if b.Name == w.Rule && w.Extra != nil && !b.Limit.alike(*w.Extra) {
+				c.refuse(w.Place, "extra", "write it in the unit of the limit, like "+b.Limit.String(), "the extra of the waiver is %s, the limit of %q is %s", w.Extra, b.Name, b.Limit)
+			}
+		}
+		for _, r := range p.Regressions {
+			if r.Name == w.Rule && w.Extra != nil {
+				c.refuse(w.Place, "extra", "leave it out, or change max_rise", "the waiver lifts the limit of %q, which is a regression", r.Name)
+			}
 		}
 		if w.Pull < 0 {
 			c.refuse(w.Place, "pull", "write the number of the pull request", "the pull of a waiver is %d", w.Pull)

@@ -18,20 +18,43 @@ const skew = unit.Minute
 // checked, not believed: they come from the code under review.
 func (p *Policy) examine(c *Case, st *standing, head, base []*footprint.Run) {
 	for _, r := range slices.Concat(head, base) {
-		p.examineFacts(r)
+		p.examineFacts(r, c.Now)
 		p.examineRecord(r, c.Now)
 	}
 	for _, r := range head {
 		p.examineHead(r, c.Now, st)
 	}
 	attempts(head)
-	copies(slices.Concat(head, base))
-	countedTwice(slices.Concat(head, base))
+	all := slices.Concat(head, base, p.around(c, head, base))
+	copies(all)
+	countedTwice(all)
 	metersOfBase(head, base, c.brokenBase())
 }
 
+// around are the booked runs, of whatever account, that were going on while the
+// head runs were, besides those that are examined anyway: a device or a record
+// may not count twice in the books either.
+func (p *Policy) around(c *Case, head, base []*footprint.Run) []*footprint.Run {
+	if c.Books == nil || len(head) == 0 {
+		return nil
+	}
+	known := map[partKey]bool{}
+	for _, r := range slices.Concat(head, base) {
+		for _, part := range r.Pieces {
+			known[keyOf(part)] = true
+		}
+	}
+	from, to := head[0].Start, head[0].End
+	for _, r := range head {
+		from, to = min(from, r.Start), max(to, r.End)
+	}
+	others := slices.DeleteFunc(c.Books.around(from, to), func(part *footprint.Part) bool { return known[keyOf(part)] || part.End > c.Now })
+	runs, _ := p.Runs(others)
+	return runs
+}
+
 // examineFacts checks job, stage, sites and machines against the policy.
-func (p *Policy) examineFacts(r *footprint.Run) {
+func (p *Policy) examineFacts(r *footprint.Run, now unit.Instant) {
 	j := p.job(r.Job, r.Stage)
 	if j == nil {
 		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("the policy does not know job %s at stage %s; add a [[job]]", r.Job, or(r.Stage, "(none)"))})
@@ -50,7 +73,7 @@ func (p *Policy) examineFacts(r *footprint.Run) {
 		}
 	}
 	if j != nil {
-		examineWork(r, j)
+		p.examineWork(r, j, now)
 	}
 }
 
@@ -62,7 +85,7 @@ func unknownPlace(part *footprint.Part, what, name string) footprint.Doubt {
 }
 
 // examineWork finds pilots: runs that did less than they or the job plan.
-func examineWork(r *footprint.Run, j *Job) {
+func (p *Policy) examineWork(r *footprint.Run, j *Job, now unit.Instant) {
 	if !r.Outcome.Evidence() || r.Outcome == record.Stopped {
 		return
 	}
@@ -83,8 +106,12 @@ func examineWork(r *footprint.Run, j *Job) {
 		}
 		r.Pilot = planned > w.Done || r.Outcome == record.Pilot
 	}
-	if r.Pilot {
-		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s is a pilot: what the whole run would emit is not judged yet", r.Run)})
+	switch {
+	case !r.Pilot:
+	case r.Work == nil || r.Work.Done == 0 || p.planned(r, j) <= r.Work.Done:
+		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s is a pilot, and does not tell how much of its work it did; write work lines with done and planned", r.Run)})
+	default:
+		p.project(r, j, now)
 	}
 }
 

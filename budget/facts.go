@@ -2,6 +2,7 @@ package budget
 
 import (
 	"fmt"
+	"slices"
 
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/grid"
@@ -64,6 +65,11 @@ func bareFacts(o *record.Open, factor grid.Factor, set *grid.Set) footprint.Fact
 		Machine: &footprint.Machine{Name: o.Machine, Units: max(o.Reserved, 1), MeasuredShare: 1},
 		Assumed: []string{"no policy: the site is taken as the grid zone, with PUE 1, measured share 1 and no embodied emissions"},
 	}
+}
+
+// Knows tells whether the policy has a job of this name.
+func (p *Policy) Knows(job string) bool {
+	return slices.ContainsFunc(p.Jobs, func(j *Job) bool { return j.Name == job })
 }
 
 // job is the policy's job for a run; nil if it does not know one.

@@ -8,6 +8,7 @@ import (
 
 	"budgetcheck/budget/finding"
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/unit"
 )
 
@@ -28,7 +29,16 @@ type Case struct {
 	Commits    *Commits          // nil where no repository is at hand
 	Adoption   bool              // the target has no policy yet: this is the head's, and the gate is open
 	Notes      []string          // what the reading of files has to say
+
+	Books      *Books         // what the ledger tells; nil where none is kept
+	Repository string         // in the ledger; empty: any
+	MergeGroup bool           // the head is a merge group: like a pull request, it is not on the branch yet
+	Tags       []*ledger.Mark // releases that tags tell of, where the ledger has no marks
+	Past       bool           // a change of the past: jobs that it has no booked run of are not asked for one
 }
+
+// prospective tells whether the change is not on the branch yet.
+func (c *Case) prospective() bool { return c.Pull > 0 || c.MergeGroup }
 
 // brokenBase is a base record of which nothing is known; "" if all could be read.
 func (c *Case) brokenBase() string {
@@ -46,24 +56,11 @@ func (c *Case) brokenBase() string {
 // Judge applies the policy to one change.
 func (p *Policy) Judge(c Case) *Statement {
 	p = p.only(c.Jobs)
-	head, stray := p.runsOf(c.Head, c.Jobs)
-	base, strayBase := p.runsOf(c.Base, c.Jobs)
 	s := &Statement{Format: 1, Branch: c.Branch, Pull: c.Pull, BaseCommit: c.BaseCommit, HeadCommit: c.HeadCommit,
 		Now: c.Now, PolicySource: c.PolicySource, Notes: slices.Clone(c.Notes), Changes: []Change{}, Rulings: []Ruling{}, Accounts: []AccountLine{}}
-	base, late := s.without(base, head)
-	j := judgement{policy: p, c: &c, s: s, standing: newStanding(p, &c), stray: stray}
-	p.label(base, "base", j.standing)
-	p.label(head, "head", j.standing)
-	s.Runs = append(append([]*footprint.Run{}, base...), head...)
-	head, notes := j.standing.touched(head)
-	s.note(notes...)
-	s.note(j.standing.noteBase(base)...)
-	j.head, j.base = head, base
-	p.examine(&c, j.standing, head, slices.Concat(base, late)) // a copy starts when its original does
-	for _, part := range strayBase {
-		s.note(fmt.Sprintf("base record %s has no readable open line and is left out", part.File))
-	}
-	s.Changes = s.changes(base, head)
+	j := judgement{policy: p, c: &c, s: s, standing: newStanding(p, &c)}
+	j.sides()
+	s.Changes = j.changes()
 	s.adoption, s.warns = c.Adoption, p.Evidence.Unproven == "warn"
 	if !p.applies(c.Branch) {
 		s.unruled = true
@@ -72,9 +69,32 @@ func (p *Policy) Judge(c Case) *Statement {
 	}
 	j.evidence()
 	j.budgets()
-	j.notYet()
+	j.regressions()
+	j.remarks()
 	s.verdict()
 	return s
+}
+
+// sides makes the runs of both sides, given and booked, and examines them.
+func (j *judgement) sides() {
+	p, c, s := j.policy, j.c, j.s
+	head, stray := p.runsOf(pool(c.Head, j.headParts()), c.Jobs)
+	booked := j.baseParts(head)
+	given, mixed := mixed(booked, c.Base)
+	base, strayBase := p.runsOf(append(given, booked...), c.Jobs)
+	s.note(mixed...)
+	base, late := s.without(base, head)
+	p.label(base, "base", j.standing)
+	p.label(head, "head", j.standing)
+	s.Runs = append(append([]*footprint.Run{}, base...), head...)
+	head, notes := j.standing.touched(head)
+	s.note(notes...)
+	s.note(j.standing.noteBase(base)...)
+	j.head, j.base, j.stray = head, base, stray
+	p.examine(c, j.standing, head, slices.Concat(base, late)) // a copy starts when its original does
+	for _, part := range strayBase {
+		s.note(fmt.Sprintf("base record %s has no readable open line and is left out", part.File))
+	}
 }
 
 // only is the policy with the jobs that any of the globs match.

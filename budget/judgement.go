@@ -16,6 +16,7 @@ type judgement struct {
 	standing   *standing
 	head, base []*footprint.Run // head runs of which something is asked
 	stray      []*footprint.Part
+	released   []*footprint.Run // before the last release; nil until they are asked for
 }
 
 func (j *judgement) rule(r Ruling) { j.s.Rulings = append(j.s.Rulings, r) }
@@ -36,7 +37,7 @@ func (j *judgement) evidence() {
 		switch {
 		case j.standing.unchanged(job):
 			j.rule(Ruling{Kind: KindEvidence, Name: "evidence", Branch: j.c.Branch, Job: job.Name, State: Within, Reason: unchanged, PolicyLine: job.Line, PolicyFile: job.File})
-		case job.Required && !j.satisfied(job):
+		case j.asked(job) && !j.satisfied(job):
 			reason, missing := j.missing(job)
 			unproven(job.Name, reason, missing, job.Place)
 		}
@@ -48,6 +49,10 @@ func (j *judgement) evidence() {
 		j.rule(j.jobEvidence(job))
 	}
 }
+
+// asked tells whether a run of the job has to be there. Of a past change it is
+// not known which jobs it left alone.
+func (j *judgement) asked(job *Job) bool { return job.Required && !j.c.Past }
 
 // unchanged is the reason of rulings on jobs whose inputs are the merge base's.
 const unchanged = "inputs unchanged"
@@ -109,18 +114,9 @@ func (j *judgement) jobEvidence(job string) Ruling {
 	return r
 }
 
-// notYet tells of rules that this version cannot judge. They are unproven, not
-// passed over.
-func (j *judgement) notYet() {
-	for _, r := range j.policy.Regressions {
-		if matches(r.Branch, j.c.Branch) {
-			j.rule(Ruling{Kind: KindRegression, Name: r.Name, Branch: j.c.Branch, Job: r.Job, State: Unproven,
-				Reason: "not judged yet: this version does not compare head with base statistically", PolicyLine: r.Line, PolicyFile: r.File})
-		}
-	}
-	for _, w := range j.policy.Waivers {
-		j.s.note(fmt.Sprintf("the waiver of %q (%s:%d) is not applied yet by this version", w.Rule, w.File, w.Line))
-	}
+// remarks says what the reader must know beside the rulings.
+func (j *judgement) remarks() {
+	j.expired()
 	if j.policy.Evidence.SameInputs && j.c.HeadCommit == "" {
 		j.s.note("whether head runs stand for the head commit (same_inputs) is not judged: no commit is given")
 	}

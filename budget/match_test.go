@@ -131,5 +131,5 @@ func TestRegressionAlone(t *testing.T) {
 	require.Equal(t, budget.Closed, st.Gate)
 	r := ruling(t, st, "no creep")
 	assert.Equal(t, []any{budget.KindRegression, budget.Unproven, lineOf(t, s.policy, "[[regression]]")}, []any{r.Kind, r.State, r.PolicyLine})
-	assert.Contains(t, r.Reason, "not judged yet")
+	assert.Equal(t, "3 base runs are needed to know their noise; there are 0", r.Reason)
 }

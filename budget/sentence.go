@@ -36,6 +36,8 @@ func (s *Statement) sentence(worst Ruling, quote func(string) string) string {
 // headline is the ruling in one line.
 func (r Ruling) headline(quote func(string) string) string {
 	switch {
+	case r.State == Over && r.Kind == KindRegression:
+		return fmt.Sprintf("%s is over: %s, where %s is allowed", quote(r.Name), quote(or(r.IntervalText, r.ObservedText)), quote(r.LimitText))
 	case r.State == Over:
 		return fmt.Sprintf("%s is over by %s: %s of %s", quote(r.Name), quote(r.ExcessText), quote(r.ObservedText), quote(r.LimitText))
 	case r.Kind == KindEvidence:

@@ -97,6 +97,36 @@ func (s *standing) unchanged(j *Job) bool {
 	return now != "" && now == s.inputs(j, atBase, s.commits.Base)
 }
 
+// headInputs is the hash of the job's inputs at the head commit; "" where it is
+// not known.
+func (s *standing) headInputs(j *Job) string {
+	if s.commits == nil {
+		return ""
+	}
+	return s.inputs(j, atHead, s.commits.Head)
+}
+
+// boundPart tells whether a booked part stands for the head commit.
+func (s *standing) boundPart(p *footprint.Part, j *Job) bool {
+	return s.bound(s.only(p, j), j)
+}
+
+// ofBase tells whether a booked part has the merge base's inputs.
+func (s *standing) ofBase(p *footprint.Part, j *Job) bool {
+	if s.commits == nil || s.commits.Base == nil || j == nil {
+		return false
+	}
+	base := s.inputs(j, atBase, s.commits.Base)
+	return base != "" && s.only(p, j).Inputs == base
+}
+
+// only is as much of the part's run as its inputs take.
+func (s *standing) only(p *footprint.Part, j *Job) *footprint.Run {
+	r := &footprint.Run{Pieces: []*footprint.Part{p}}
+	r.Inputs = s.of(r, j)
+	return r
+}
+
 // of is the hash of a run's inputs; "" where its commit is not known.
 func (s *standing) of(r *footprint.Run, j *Job) string {
 	commit := r.Commit()
@@ -108,7 +138,7 @@ func (s *standing) of(r *footprint.Run, j *Job) string {
 	}
 	t, ok := s.commits.Named[commit]
 	if !ok {
-		return ""
+		return r.Booked()
 	}
 	return s.inputs(j, commit, t)
 }

@@ -1,6 +1,7 @@
 package budget
 
 import (
+	"budgetcheck/budget/compare"
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/unit"
 )
@@ -45,8 +46,10 @@ type Statement struct {
 	Changes      []Change         `json:"changes"`
 	Rulings      []Ruling         `json:"rulings"`
 	Accounts     []AccountLine    `json:"accounts"`
+	Landings     []Landing        `json:"landings,omitempty"`
 	Edits        []Edit           `json:"policy_edits,omitempty"`
-	Notes        []string         `json:"notes,omitempty"` // what the reader must know beside the rulings
+	Replay       *Replay          `json:"replay,omitempty"` // of past changes, where the change edits the policy
+	Notes        []string         `json:"notes,omitempty"`  // what the reader must know beside the rulings
 
 	Preview  *Statement `json:"-"` // by the head's policy, where it differs
 	unruled  bool       // no rule of the policy applies to the branch
@@ -104,26 +107,41 @@ type Change struct {
 	BaseHeld  *unit.Mass `json:"base_held_g,omitempty"` // geometric means, grid held
 	HeadHeld  *unit.Mass `json:"head_held_g,omitempty"`
 	HeldRatio *float64   `json:"held_ratio,omitempty"`
+	LowRatio  *float64   `json:"low_ratio,omitempty"` // bounds of HeldRatio
+	HighRatio *float64   `json:"high_ratio,omitempty"`
+
+	Detectable *float64        `json:"detectable_ratio,omitempty"` // the least true rise that would be found
+	RunsNeeded *int            `json:"runs_needed,omitempty"`      // head runs in all that would settle it
+	Confidence *float64        `json:"confidence,omitempty"`       // of each bound
+	Bridge     *compare.Bridge `json:"bridge,omitempty"`           // Change split by cause
+
+	ratioU, ratioDF float64 // standard uncertainty of HeldRatio and its degrees of freedom
 }
 
 // AccountLine is one account against its limit. With per = "run" nothing is
-// brought forward: each run has the limit to itself.
+// brought forward: each run has the limit to itself. Where nothing of the change
+// is charged yet, only what is brought forward is there, and the landing.
 type AccountLine struct {
 	Name    string     `json:"name"`
 	Per     string     `json:"per"`
+	Period  string     `json:"period,omitempty"` // like 2031-03
 	Brought *unit.Mass `json:"brought_g,omitempty"`
 	Change  *unit.Mass `json:"change_g,omitempty"`
 	Carried *unit.Mass `json:"carried_g,omitempty"`
 	Limit   unit.Mass  `json:"limit_g"`
 	State   State      `json:"-"`
 	Page    []PageLine `json:"-"` // the account line by line, as it stands and as it would stand
+	Landing *Landing   `json:"-"` // the worse one of those that decide, of a change that is not on the branch yet
 }
 
-// PageLine is one line of an account's page.
+// PageLine is one line of an account's page: runs that were, runs that are
+// left, or the landing.
 type PageLine struct {
 	Job, Stage string
 	Head       bool // as it would stand; else as it stands
 	Runs       int
+	Left       float64    // runs that are left; 0 in lines about runs that were
+	Lands      bool       // where the period lands: Each is all of it
 	Each       unit.Mass  // mean of a run
-	Low, High  *unit.Mass // least and greatest run; nil for one run
+	Low, High  *unit.Mass // least and greatest run, or the interval of the landing; nil for one run
 }

@@ -28,7 +28,14 @@ type Booked struct {
 	GapUKWh      float64     `json:"gap_u_kwh,omitempty"`     // of the filled gaps
 	GapUG        float64     `json:"gap_u_g,omitempty"`
 	Reasons      []Doubt     `json:"doubts,omitempty"` // what speaks against the record itself
+	// Progress of a run that planned more than it did: what the whole of it
+	// would take is projected from it.
+	Progress []Progress `json:"progress,omitempty"`
 }
+
+// keptProgress is how many steps of a pilot are booked: eight for each of the
+// batches that it is cut into, and the ends.
+const keptProgress = 66
 
 // Book makes the ledger's form of a part.
 func (p *Part) Book(m Method) Booked {
@@ -40,6 +47,9 @@ func (p *Part) Book(m Method) Booked {
 		GapUKWh: math.Sqrt(p.random.facility), GapUG: math.Sqrt(p.random.mass), Reasons: p.Doubts}
 	if p.Work != nil {
 		b.WorkOfPart = p.Work.OfPart
+	}
+	if p.Pilot {
+		b.Progress = Thinned(p.Progress, keptProgress)
 	}
 	if n := p.Findings.Len(); n > 0 {
 		b.Reasons = append(b.Reasons[:len(b.Reasons):len(b.Reasons)], p.unreadable())

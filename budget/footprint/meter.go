@@ -29,6 +29,9 @@ type meter struct {
 
 	estimated bool // what is in part
 
+	marks *progress // where the work lines stand
+	next  int       // the first of them that this meter has not reached
+
 	above      int // readings above rated
 	firstAbove record.Line
 }
@@ -140,6 +143,7 @@ func (m *meter) finish(end unit.Instant) {
 	} else {
 		m.cover(end, m.power, m.power)
 	}
+	m.pass(end, 0, 0)
 	m.flush()
 }
 
@@ -153,6 +157,9 @@ func (m *meter) cover(to unit.Instant, p0, p1 float64) {
 	m.extremes(p0, p1)
 	m.covered += to.Sub(start)
 	slope := (p1 - p0) / length
+	if m.next < len(m.marks.points) {
+		m.pass(to, p0, slope)
+	}
 	for p, rest := p0, length; ; rest = to.Sub(m.at).Seconds() {
 		b := m.line.at(m.bucket)
 		if to <= b.to {
@@ -187,6 +194,7 @@ func (m *meter) skip(to unit.Instant) {
 		m.gaps = append(m.gaps, gap{m.at, to, m.bucket})
 	}
 	m.flush()
+	m.pass(to, 0, 0)
 	for m.line.at(m.bucket).to < to {
 		m.bucket++
 	}

@@ -54,6 +54,9 @@ type Part struct {
 	Doubts   []Doubt
 	Digest   string // hash of the energy lines; empty if there are none
 
+	Progress []Progress // at its work lines, or as many of them as are kept; nil for totals
+	Pilot    bool       // it did less than was planned
+
 	// Of a part that comes from the books: the account that it is charged to,
 	// and the hash of its inputs where that was known.
 	Account string
@@ -137,6 +140,7 @@ type weighing struct {
 	total  *meter   // nil if there are none
 	rated  float64
 	hash   *digest
+	steps  progress
 
 	refused string // the first line that cannot be of the run, and why
 }
@@ -166,8 +170,10 @@ func (w *weighing) take(l *record.Line) {
 		w.used(l)
 	case record.KindWork:
 		p.Work = l.Work
+		w.steps.mark(l.At, l.Work.Done, w.meters)
 	case record.KindClose:
 		p.Outcome, p.Closed = l.Close.Outcome, true
+		p.Pilot = p.Outcome == record.Pilot
 	}
 }
 
@@ -188,6 +194,7 @@ func (w *weighing) open(l *record.Line) {
 	p := w.part
 	p.Open, p.End = *l.Open, l.At
 	p.Facts = w.look(&p.Open)
+	w.steps.start = l.At
 	w.line = timeline{pricer: p.Facts.pricer(w.method), start: l.At}
 	w.totals = w.line
 	if m := p.Facts.Machine; m != nil && m.Rated != nil {
@@ -209,7 +216,7 @@ func (w *weighing) meter(l *record.Line) *meter {
 }
 
 func (w *weighing) newMeter(k record.Kind, line *timeline) *meter {
-	return &meter{kind: k, line: line, maxGap: w.method.MaxGap, rated: w.rated, at: w.part.Open.At}
+	return &meter{kind: k, line: line, maxGap: w.method.MaxGap, rated: w.rated, at: w.part.Open.At, marks: &w.steps}
 }
 
 func (w *weighing) used(l *record.Line) {
@@ -236,8 +243,14 @@ func (w *weighing) finish(names []string) {
 	for n, m := range w.meters {
 		w.close(names[n], m)
 	}
+	if w.total == nil {
+		p.Progress = w.steps.told()
+	}
 	if len(p.Meters) == 0 {
 		p.doubt(Doubt{Reason: "no energy: " + p.File + " has no power, energy or used lines"})
+	}
+	if w := p.Work; w != nil && w.Planned > w.Done && p.Outcome.Evidence() && p.Outcome != record.Stopped {
+		p.Pilot = true
 	}
 	if w.refused != "" {
 		p.doubt(Doubt{Reason: w.refused, Refutes: true})

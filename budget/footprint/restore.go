@@ -31,6 +31,7 @@ func (b *Booked) Restore(file string, m Method, look func(*record.Open) Facts) *
 		w.OfPart = b.WorkOfPart
 		p.Work = &w
 	}
+	p.Progress, p.Pilot = b.Progress, len(b.Progress) > 0
 	b.restoreEnergy(p)
 	b.restate(p, m)
 	return p

@@ -72,8 +72,16 @@ type Run struct {
 	Work        *record.Work    `json:"work,omitempty"`
 	Rate        *float64        `json:"rate_g_per_unit,omitempty"`
 	Pilot       bool            `json:"pilot,omitempty"`
-	Parts       []RunPart       `json:"parts"`
-	Notes       []string        `json:"notes,omitempty"`
+
+	ProjectedKWh   *unit.Energy `json:"projected_kwh,omitempty"` // of a pilot, at the facility: what its whole work would take
+	ProjectedTotal *unit.Mass   `json:"projected_total_g,omitempty"`
+	ProjectedLow   *unit.Mass   `json:"projected_low_g,omitempty"` // 95 %
+	ProjectedHigh  *unit.Mass   `json:"projected_high_g,omitempty"`
+
+	Parts []RunPart `json:"parts"`
+	Notes []string  `json:"notes,omitempty"`
+
+	Projection *Whole `json:"-"` // of a pilot; nil where nothing can be projected
 
 	Proven Proven  `json:"-"`
 	Terms  Figures `json:"-"`

@@ -89,9 +89,7 @@ func (p *Part) settleFacts() {
 	if s := p.Facts.Site; s != nil && s.Market != nil {
 		p.market = s.Market.Of(p.facility)
 	}
-	if m := p.Facts.Machine; m != nil && m.Embodied != nil {
-		p.embodied = unit.Mass(float64(*m.Embodied) * p.span().Seconds() / m.Lifetime.Seconds() * p.reservation())
-	}
+	p.embodied = p.EmbodiedOver(p.span())
 }
 
 // plausible checks that the machine's meters are there, and compares its mean

@@ -2,13 +2,20 @@ package inputs
 
 import (
 	"bytes"
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
 	"os"
 	"os/exec"
 	"slices"
+	"strconv"
 	"strings"
+	"time"
+
+	"github.com/bmatcuk/doublestar/v4"
+
+	"budgetcheck/budget/unit"
 )
 
 // Git is a local clone, read by the system's git. It may be shallow or bare.
@@ -131,4 +138,38 @@ func (g *Git) tip(ctx context.Context, ref string) (string, error) {
 		}
 	}
 	return "", fmt.Errorf("branch %s: %w", ref, ErrUnknown)
+}
+
+// Tag is a tag of a repository.
+type Tag struct {
+	Name   string
+	Commit string // full id
+	At     unit.Instant
+}
+
+// Tags are the tags that a glob matches on commits that a commit or branch
+// contains, in order of time: that of the tag, or of its commit if the tag has
+// none of its own.
+func (g *Git) Tags(ctx context.Context, glob, in string) (tags []Tag, err error) {
+	commit, err := g.tip(ctx, in)
+	if err != nil {
+		return nil, err
+	}
+	out, err := g.run(ctx, "for-each-ref", "--merged", commit, "--sort=creatordate",
+		"--format=%(refname:strip=2)%09%(objectname)%09%(*objectname)%09%(creatordate:unix)", "refs/tags")
+	if err != nil {
+		return nil, err
+	}
+	for line := range strings.Lines(string(out)) {
+		fields := strings.Split(strings.TrimSpace(line), "\t")
+		if len(fields) != 4 || !doublestar.MatchUnvalidated(glob, fields[0]) {
+			continue
+		}
+		seconds, err := strconv.ParseInt(fields[3], 10, 64)
+		if err != nil {
+			return nil, fmt.Errorf("git tells the time of tag %s as %q", fields[0], fields[3])
+		}
+		tags = append(tags, Tag{Name: fields[0], Commit: cmp.Or(fields[2], fields[1]), At: unit.At(time.Unix(seconds, 0))})
+	}
+	return tags, nil
 }

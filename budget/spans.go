@@ -1,0 +1,210 @@
+package budget
+
+import (
+	"fmt"
+	"slices"
+	"strings"
+	"time"
+
+	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/forecast"
+	"budgetcheck/budget/ledger"
+	"budgetcheck/budget/unit"
+)
+
+// span is what a period budget adds up: an account over a time.
+type span struct {
+	forecast.Period        // its Name is empty where the calendar has none: pull, release
+	account         string // that is charged
+	ends            bool   // the period's end is known
+	opened          string // what a release period counts from, for people
+}
+
+// location is the time zone of the policy's calendar.
+func (p *Policy) location() *time.Location {
+	where, err := time.LoadLocation(p.Account.Timezone)
+	if err != nil { // the policy was checked
+		return time.UTC
+	}
+	return where
+}
+
+// span is the current one of a budget.
+func (j *judgement) span(b *Budget) span {
+	c := j.c
+	switch b.Per {
+	case "pull":
+		return span{Period: forecast.Period{Per: b.Per, To: c.Now}, account: ledger.PullAccount(c.Pull)}
+	case "release":
+		s := span{Period: forecast.Period{Per: b.Per, To: c.Now}, account: c.Branch, opened: "the first entry, for there is no release yet"}
+		if m := j.lastRelease(c.Now); m != nil {
+			s.From, s.opened = m.At, "release "+m.Tag
+		}
+		return s
+	}
+	period, err := forecast.Holding(b.Per, c.Now, j.policy.location())
+	if err != nil { // the policy was checked
+		panic(err)
+	}
+	return span{Period: period, account: c.Branch, ends: true}
+}
+
+// lastRelease is the newest release of the branch before t: by the ledger's
+// marks, else by tags; nil if there is none.
+func (j *judgement) lastRelease(t unit.Instant) (last *ledger.Mark) {
+	marks := j.c.Tags
+	if b := j.c.Books; b != nil && slices.ContainsFunc(b.ledger.Marks, j.ofBranch) {
+		marks = b.ledger.Marks
+	}
+	for _, m := range marks {
+		if j.ofBranch(m) && m.At <= t && (last == nil || m.At > last.At) {
+			last = m
+		}
+	}
+	return last
+}
+
+func (j *judgement) ofBranch(m *ledger.Mark) bool { return m.Branch == j.c.Branch }
+
+// window is the part of the span that is over.
+func (j *judgement) window(s span) ledger.Window {
+	return ledger.Window{Repository: j.c.Repository, Account: s.account, From: s.From, To: max(s.From, min(s.To, j.c.Now))}
+}
+
+// tally is a sum against a limit, and how far it can be trusted.
+type tally struct {
+	mass    unit.Sum[unit.Mass]
+	energy  unit.Sum[unit.Energy]
+	sure    amountSum // what is not in doubt, and what is proven of the rest
+	terms   footprint.Figures
+	doubted []string // runs
+	reason  string   // of the first doubt that is not only a missing booking
+	runs    int
+}
+
+type amountSum struct {
+	mass   unit.Sum[unit.Mass]
+	energy unit.Sum[unit.Energy]
+}
+
+// booked adds what the books tell of an account.
+func (t *tally) booked(b *Budget, s ledger.Spending) {
+	for _, line := range s.Lines {
+		if !b.covers(line.Job, line.Stage) {
+			continue
+		}
+		t.runs += line.Runs
+		t.mass.Add(line.Total())
+		t.energy.Add(line.Facility)
+		t.sure.mass.Add(line.SureG + line.ProvenG)
+		t.sure.energy.Add(line.SureKWh + line.ProvenKWh)
+		t.doubted = append(t.doubted, line.InDoubt...)
+		t.addTerms(line)
+	}
+}
+
+// addTerms notes what the sums of a line scale with. Gaps are left out: over a
+// period they are small beside what is shared.
+func (t *tally) addTerms(line ledger.Spent) {
+	operational, facility := float64(line.Operational), float64(line.Facility)
+	add := func(terms *footprint.Terms, kind footprint.InputKind, name string, c float64) {
+		*terms = terms.Plus(1, footprint.Terms{By: map[footprint.Input]float64{{Kind: kind, Name: name}: c}})
+	}
+	for terms, figure := range map[*footprint.Terms]float64{&t.terms.Mass: operational, &t.terms.Energy: facility} {
+		add(terms, footprint.InputMeter, line.Machine, figure)
+		add(terms, footprint.InputShare, line.Machine, figure)
+		add(terms, footprint.InputPUE, line.Site, figure)
+	}
+	add(&t.terms.Mass, footprint.InputIntensity, line.Zone, operational)
+	add(&t.terms.Mass, footprint.InputEmbodied, line.Machine, float64(line.Embodied))
+}
+
+// run adds as much of a run as lies within the span.
+func (t *tally) run(r *footprint.Run, m footprint.Method, s span) {
+	t.runs++
+	var inside unit.Sum[unit.Energy]
+	for _, p := range r.Pieces {
+		b := p.Book(m)
+		in := b.Within(s.From, s.To)
+		mass := in.Operational + in.Embodied
+		t.mass.Add(mass)
+		t.energy.Add(in.Facility)
+		inside.Add(in.Facility)
+		switch {
+		case r.Known():
+			t.sure.mass.Add(mass)
+			t.sure.energy.Add(in.Facility)
+		case !r.Refuted() && b.Start >= s.From && b.End <= s.To:
+			t.sure.mass.Add(b.ProvenG + in.Embodied)
+			t.sure.energy.Add(b.ProvenKWh)
+		}
+	}
+	share := 1.0
+	if r.Facility != nil && *r.Facility > 0 {
+		share = float64(inside.Value()) / float64(*r.Facility)
+	}
+	t.terms.Mass = t.terms.Mass.Plus(share, r.Terms.Mass)
+	t.terms.Energy = t.terms.Energy.Plus(share, r.Terms.Energy)
+	t.examine(r)
+}
+
+// examine notes what speaks against a run.
+func (t *tally) examine(r *footprint.Run) {
+	if r.Known() {
+		return
+	}
+	t.doubted = append(t.doubted, r.Run)
+	if t.reason == "" {
+		t.reason = "the total of run " + r.Run + " is not known"
+		if len(r.Doubts) > 0 {
+			t.reason = r.Doubts[0].Reason
+		}
+	}
+}
+
+// amount is the tally against a limit of mass or energy.
+func (t *tally) amount(l Limit, d footprint.Declared) (a amount) {
+	if l.Energy != nil {
+		a.value = float64(t.energy.Value())
+		a.u, a.hasU = t.terms.Energy.U(d)
+		return a
+	}
+	a.value = float64(t.mass.Value())
+	a.u, a.hasU = t.terms.Mass.U(d)
+	return a
+}
+
+// proven is the tally of what is not in doubt. It has no more uncertainty than
+// the whole.
+func (t *tally) proven(l Limit, d footprint.Declared) amount {
+	a := t.amount(l, d)
+	a.value = float64(t.sure.mass.Value())
+	if l.Energy != nil {
+		a.value = float64(t.sure.energy.Value())
+	}
+	return a
+}
+
+// doubt says why the tally is not proven; "" if it is.
+func (t *tally) doubt() string {
+	names := slices.Clone(t.doubted)
+	slices.Sort(names)
+	names = slices.Compact(names)
+	const most = 5
+	switch n := len(names); {
+	case n == 0:
+		return ""
+	case t.reason != "" && n == 1:
+		return t.reason
+	case n > most:
+		return fmt.Sprintf("the evidence of %d runs is in doubt, among them %s", n, names[0])
+	}
+	return fmt.Sprintf("the evidence of %s is in doubt", listed("run", names))
+}
+
+func listed(what string, names []string) string {
+	if len(names) == 1 {
+		return what + " " + names[0]
+	}
+	return what + "s " + strings.Join(names, ", ")
+}
