@@ -18,6 +18,7 @@ import (
 
 	"budgetcheck/budget"
 	"budgetcheck/budget/grid"
+	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/record"
 )
 
@@ -28,6 +29,7 @@ var kinds = []struct {
 	match *regexp.Regexp
 	check func(t *testing.T, path string)
 }{
+	{"books", regexp.MustCompile(`/books\.ndjson$`), checkBooks},
 	{"record", regexp.MustCompile(`\.ndjson(\.gz|\.zst)?$`), checkRecord},
 	{"series", regexp.MustCompile(`\.csv$`), checkSeries},
 	{"policy", regexp.MustCompile(`\.toml$`), checkPolicy},
@@ -66,6 +68,19 @@ func TestFilesOfNoKindAreFound(t *testing.T) {
 		name, _ := kindOf(path)
 		require.Empty(t, name, path)
 	}
+}
+
+// checkBooks has the ledger check itself, and reads it.
+func checkBooks(t *testing.T, path string) {
+	store, err := ledger.Open(t.Context(), "file:"+path)
+	require.NoError(t, err)
+	found, err := store.Vet(t.Context())
+	require.NoError(t, err)
+	require.Empty(t, found.Lines())
+	read, err := store.Read(t.Context(), ledger.Query{})
+	require.NoError(t, err)
+	require.NotEmpty(t, read.Entries)
+	require.NoError(t, store.Close())
 }
 
 // checkRecord holds each line against the schema and the whole against the

@@ -72,7 +72,7 @@ func TestJUnitSaysWhyAndWhere(t *testing.T) {
 	failed := out.Suite.Cases[0]
 	require.Equal(t, "main, one training run, job retrain-tide", failed.Name)
 	require.Regexp(t, `^over, observed 2.37 ± 0.46 kg, limit 2.20 kg, within the limit with a probability of 22.\d %$`, failed.Failure.Message)
-	require.Equal(t, "budgetcheck.toml:63: "+failed.Failure.Message, failed.Failure.Text)
+	require.Equal(t, "budgetcheck.toml:65: "+failed.Failure.Message, failed.Failure.Text)
 	require.Equal(t, "within", out.Suite.Cases[2].Out, "evidence has no figures")
 }
 

@@ -15,14 +15,27 @@ func Markdown(w io.Writer, s *budget.Statement) error {
 	fmt.Fprintf(&b, "%s\n", subject(s, code))
 	for _, t := range tables(s) {
 		markdownTable(&b, t)
-		if t.title == "Accounts" {
+		switch t.title {
+		case titleAccounts:
 			markdownPages(&b, s)
+			markdownLines(&b, bridgeLine(s))
+		case titleBridges:
+			markdownLines(&b, known(s, code)...)
 		}
 	}
 	markdownNotes(&b, allNotes(s.Notes, s.Runs))
 	fmt.Fprintf(&b, "\n%s\n", foot(s))
 	_, err := io.WriteString(w, b.String())
 	return err
+}
+
+// markdownLines writes sentences as paragraphs; names in them are inert.
+func markdownLines(b *strings.Builder, lines ...string) {
+	for _, line := range lines {
+		if line != "" {
+			fmt.Fprintf(b, "\n%s\n", line)
+		}
+	}
 }
 
 // markdownPages shows the accounts line by line. In a fenced block nothing is

@@ -10,6 +10,7 @@ package report
 
 import (
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 	"unicode/utf8"
@@ -58,6 +59,9 @@ const widest = 60
 // +, and what is wrong with !.
 func page(a budget.AccountLine) []string {
 	lines := []string{fmt.Sprintf("  %s: %s for each %s", Inert(a.Name), a.Limit, a.Per)}
+	if period := pagePeriod(a); period != "" {
+		lines[0] += ", " + Inert(period)
+	}
 	width := 0
 	for _, l := range a.Page {
 		width = max(width, utf8.RuneCountInString(pageName(l)))
@@ -69,22 +73,66 @@ func page(a budget.AccountLine) []string {
 		}
 		lines = append(lines, fmt.Sprintf("%s %s  %s", sign, padded(pageName(l), width, false), each(l)))
 	}
-	switch {
-	case a.State == budget.Over && a.Carried != nil:
-		lines = append(lines, fmt.Sprintf("! over the limit by %s", *a.Carried-a.Limit))
-	case a.State == budget.Unproven:
-		lines = append(lines, "! unproven, see the rulings")
-	}
-	return lines
+	return append(lines, wrong(a)...)
 }
 
-func pageName(l budget.PageLine) string { return Inert(jobStage(l.Job, l.Stage)) }
+// pagePeriod is the period that the page is about: of a landing it may be the
+// next one.
+func pagePeriod(a budget.AccountLine) string {
+	if a.Landing != nil {
+		return a.Landing.Period
+	}
+	return a.Period
+}
+
+// wrong is what is wrong with an account, in a line.
+func wrong(a budget.AccountLine) []string {
+	switch {
+	case a.State == budget.Unproven:
+		return []string{"! unproven, see the rulings"}
+	case a.State == budget.Waived:
+		return []string{"! waived, see the rulings"}
+	case a.State == budget.Over && a.Carried != nil:
+		return []string{fmt.Sprintf("! over the limit by %s", *a.Carried-a.Limit)}
+	case a.Landing != nil && a.Landing.Expected != nil && *a.Landing.Expected > a.Limit:
+		return []string{fmt.Sprintf("! lands over the limit by %s", *a.Landing.Expected-a.Limit)}
+	case a.Landing != nil && a.Brought != nil && *a.Brought > a.Limit:
+		return []string{fmt.Sprintf("! over the limit by %s before this change", *a.Brought-a.Limit)}
+	}
+	return nil
+}
+
+func pageName(l budget.PageLine) string {
+	if l.Lands {
+		return "landing"
+	}
+	return Inert(jobStage(l.Job, l.Stage))
+}
 
 func each(l budget.PageLine) string {
-	if l.Runs == 1 {
+	switch {
+	case l.Lands && l.Low != nil:
+		return fmt.Sprintf("%s, from %s to %s", l.Each, *l.Low, *l.High)
+	case l.Lands:
+		return l.Each.String()
+	case l.Left == 1:
+		return fmt.Sprintf("1 run left at %s", l.Each)
+	case l.Left > 0:
+		return fmt.Sprintf("%s runs left at %s each", amount(l.Left), l.Each)
+	case l.Runs == 1:
 		return fmt.Sprintf("1 run  at %s", l.Each)
+	case l.Low == nil:
+		return fmt.Sprintf("%d runs at %s each", l.Runs, l.Each)
 	}
 	return fmt.Sprintf("%d runs at %s each, from %s to %s", l.Runs, l.Each, *l.Low, *l.High)
+}
+
+// amount is a number of runs; one that is only expected need not be whole.
+func amount(n float64) string {
+	if n == math.Trunc(n) {
+		return fmt.Sprintf("%.0f", n)
+	}
+	return fmt.Sprintf("about %.3g", n)
 }
 
 // padded fills text up with spaces, before it or after.

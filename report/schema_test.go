@@ -101,8 +101,8 @@ func TestSchemaRefusesBrokenStatements(t *testing.T) {
 // What later commands add to a statement has its place already.
 func TestSchemaKnowsWhatIsToCome(t *testing.T) {
 	whole := strings.TrimSuffix(strings.TrimSpace(string(asJSON(t, noRule.judge(t)))), "}")
-	whole += `, "landings": [{"name": "main, month", "per": "month", "spent_g": 31000, "expected_g": 38000, "low_g": 36000,
-		"high_g": 40100, "limit_g": 40000, "runs_left": 15, "runs_out_on": "2031-03-30T00:00:00Z", "burn_ratio": -0.05, "state": "near"}],
+	whole += `, "landings": [{"name": "main, month", "per": "month", "period": "2031-03", "spent_g": 31000, "expected_g": 38000, "low_g": 36000,
+		"high_g": 40100, "limit_g": 40000, "runs_left": 15, "runs_out_on": "2031-03-30T00:00:00Z", "burn_ratio": 0.95, "state": "near"}],
 		"remedies": [{"ruling": "main, month", "lever": "start", "value": "2031-03-10T10:00:00Z", "after_g": 2100, "saves_g": 270, "text": "start at ten"}],
 		"policy_edits": [{"table": "budget \"main, month\"", "key": "limit", "from": "40 kg", "to": "44 kg"}]}`
 	require.NoError(t, schema(t, "statement.schema.json").Validate(decoded(t, []byte(whole))))

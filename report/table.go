@@ -22,7 +22,15 @@ func (t table) right(column int) bool { return slices.Contains(numbers, t.head[c
 
 var numbers = []string{"brought forward", "this change", "carried forward", "limit", "runs", "mean of base", "mean of head", "change",
 	"base, grid held", "head, grid held", "change, grid held", "observed", "probability within", "policy line", "duration",
+	"the code", "work", "efficiency", "energy", "not the code", "grid", "grid: zone", "grid: day", "grid: hour",
+	"spent", "without the change", "expected", "runs left", "burn ratio", "open", "closed", "unproven",
 	"coverage", "facility", "intensity", "operational", "embodied", "total", "rate", "market-based"}
+
+// The tables that lines of text follow.
+const (
+	titleAccounts = "Accounts"
+	titleBridges  = "Why it moved"
+)
 
 // cell is a text in a table. Cells with foreign text are written inert.
 type cell struct {
@@ -71,18 +79,18 @@ func (t table) slim() table {
 
 // tables are the parts of a statement that are tables, in order.
 func tables(s *budget.Statement) []table {
-	return []table{accounts(s), changes(s), rulings(s).slim(), edits(s), preview(s), runs(s.Runs).slim()}
+	return []table{accounts(s), landings(s.Landings).slim(), changes(s), bridges(s).slim(), rulings(s).slim(), edits(s), preview(s), replayed(s.Replay), runs(s.Runs).slim()}
 }
 
 func accounts(s *budget.Statement) table {
-	t := table{title: "Accounts", head: []string{"account", "per", "brought forward", "this change", "carried forward", "limit", "state"}}
+	t := table{title: titleAccounts, head: []string{"account", "per", "brought forward", "this change", "carried forward", "limit", "state"}}
 	for _, a := range s.Accounts {
 		carried, limit := value(a.Carried), own("%s", a.Limit)
 		if a.Carried != nil {
 			c, l := unit.Apart(*a.Carried, a.Limit)
 			carried, limit = own("%s", c), own("%s", l)
 		}
-		t.rows = append(t.rows, []cell{foreign(a.Name), own("%s", a.Per), value(a.Brought), value(a.Change), carried, limit, own("%s", a.State)})
+		t.rows = append(t.rows, []cell{foreign(a.Name), per(a.Per, a.Period), value(a.Brought), value(a.Change), carried, limit, own("%s", a.State)})
 	}
 	return t
 }

@@ -16,14 +16,27 @@ func Text(w io.Writer, s *budget.Statement) error {
 	fmt.Fprintf(&b, "%s\n", subject(s, Inert))
 	for _, t := range tables(s) {
 		textTable(&b, t)
-		if t.title == "Accounts" {
+		switch t.title {
+		case titleAccounts:
 			textPages(&b, s)
+			textLines(&b, bridgeLine(s))
+		case titleBridges:
+			textLines(&b, known(s, Inert)...)
 		}
 	}
 	textNotes(&b, allNotes(s.Notes, s.Runs))
 	fmt.Fprintf(&b, "\n%s\n", foot(s))
 	_, err := io.WriteString(w, b.String())
 	return err
+}
+
+// textLines writes sentences, each in a line of its own below an empty one.
+func textLines(b *strings.Builder, lines ...string) {
+	for _, line := range lines {
+		if line != "" {
+			fmt.Fprintf(b, "\n%s\n", line)
+		}
+	}
 }
 
 func textPages(b *strings.Builder, s *budget.Statement) {
