@@ -25,9 +25,9 @@ import (
 //go:generate go run . -out ..
 
 func main() {
-	out := flag.String("out", "testdata/demo", "the demo's `folder`")
+	out := flag.String("out", "testdata/demo", "the demo's `folder`, with its policy")
 	flag.Parse()
-	if err := write(*out); err != nil {
+	if err := write(*out, *out); err != nil {
 		fmt.Fprintln(os.Stderr, "gen:", err)
 		os.Exit(1)
 	}
@@ -39,9 +39,13 @@ type file struct {
 	content []byte // before packing
 }
 
-// write makes every file of the demo below dir.
-func write(dir string) error {
-	files, err := scenario()
+// write makes every file of the demo below dir, by the policy in demo.
+func write(demo, dir string) error {
+	policy, err := os.ReadFile(filepath.Join(demo, "budgetcheck.toml"))
+	if err != nil {
+		return err
+	}
+	files, err := scenario(policy)
 	if err != nil {
 		return err
 	}
@@ -61,12 +65,18 @@ func write(dir string) error {
 	return nil
 }
 
-// scenario is all files: two series, the base runs, the head runs.
-func scenario() ([]file, error) {
+// scenario is all files: two series, the base runs, the head runs, and the
+// books of the winter before them.
+func scenario(policy []byte) ([]file, error) {
 	var files []file
 	for _, z := range zones() {
-		files = append(files, file{z.file, z.csv()})
+		files = append(files, z.files()...)
 	}
+	books, err := winter(policy, files)
+	if err != nil {
+		return nil, err
+	}
+	files = append(files, books)
 	for _, r := range append(baseRuns(), headRuns()...) {
 		records, err := r.records()
 		if err != nil {

@@ -4,10 +4,14 @@ import (
 	"bytes"
 	"fmt"
 	"math"
+	"strings"
 	"time"
 
 	"budgetcheck/budget/unit"
 )
+
+// olderStart leaves a season before that, for landings to be tried on.
+var olderStart = instant("2030-11-01T00:00:00Z")
 
 // zone is an invented grid zone: its intensity is a daily course times the
 // week's times the weather's.
@@ -45,12 +49,18 @@ func zones() []zone {
 	}}
 }
 
-// csv is the series with one row for each hour.
-func (z zone) csv() []byte {
+// files are the series, one row for each hour, in a file a year.
+func (z zone) files() []file {
+	older := strings.Replace(z.file, "2031", "2030", 1)
+	return []file{{z.file, z.csv(z.name, seriesStart, z.until)}, {older, z.csv(z.name+" 2030", olderStart, seriesStart)}}
+}
+
+// csv is a span of the series; chance names its weather.
+func (z zone) csv(chance string, from, until unit.Instant) []byte {
 	var rows bytes.Buffer
 	fmt.Fprintln(&rows, "zone,from,to,g_per_kwh,factor")
-	weather := newWander(stream(z.name), 0.97, z.weather)
-	for at := seriesStart; at < z.until; at = at.Add(unit.Hour) {
+	weather := newWander(stream(chance), 0.97, z.weather)
+	for at := from; at < until; at = at.Add(unit.Hour) {
 		fmt.Fprintf(&rows, "%s,%s,%s,%.1f,average\n", z.name, at, at.Add(unit.Hour), z.intensity(at, weather.next()))
 	}
 	return rows.Bytes()
