@@ -13,9 +13,9 @@ type actionInputs struct {
 	policy, head, base, grid, job []string
 	name                          string
 	branch, pull, commit          string
-	token, out                    string
+	token, out, ledger            string
 	post                          []string
-	await, enforce                bool
+	book, await, enforce          bool
 }
 
 // readInputs reads what the runner hands over in the environment.
@@ -33,11 +33,9 @@ func readInputs(getenv func(string) string) (in actionInputs, err error) {
 	in.name, in.out, in.token = a.GetInput("name"), a.GetInput("out"), a.GetInput("token")
 	in.branch, in.pull, in.commit = a.GetInput("branch"), a.GetInput("pull"), a.GetInput("commit")
 	in.post = strings.FieldsFunc(a.GetInput("post"), func(r rune) bool { return strings.ContainsRune(", \t\r\n", r) })
-	book, errBook := truth("book", a.GetInput("book"), false)
-	if book {
-		errBook = errors.New("the input book is true, but this version keeps no books; leave it out")
-	}
-	var errAwait, errEnforce error
+	in.ledger = a.GetInput("ledger")
+	var errBook, errAwait, errEnforce error
+	in.book, errBook = truth("book", a.GetInput("book"), false)
 	in.await, errAwait = truth("await", a.GetInput("await"), false)
 	in.enforce, errEnforce = truth("enforce", a.GetInput("enforce"), true)
 	in.complete()

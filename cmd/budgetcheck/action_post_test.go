@@ -134,15 +134,6 @@ func TestInputsThatAreWrong(t *testing.T) {
 	}
 }
 
-func TestBookIsRefused(t *testing.T) {
-	w := newWorld(t, nil)
-	s := w.pull(lean(t, w.head))
-	s.inputs = map[string]string{"book": "true"}
-	o := w.run(s)
-	assert.Equal(t, exitCannot, o.status)
-	assert.Contains(t, o.complaint, "this version keeps no books")
-}
-
 // A host that stays down changes no ruling, and that nothing was posted is
 // said. It asks to wait longer than anybody would, so that the test need not.
 func TestHostDownWhenPosting(t *testing.T) {

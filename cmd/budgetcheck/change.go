@@ -12,6 +12,7 @@ import (
 	"budgetcheck/budget"
 	"budgetcheck/budget/grid"
 	"budgetcheck/budget/inputs"
+	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/unit"
 	"budgetcheck/report/github"
 )
@@ -33,17 +34,27 @@ type change struct {
 	files          []budget.PolicyFile
 	headFiles      []budget.PolicyFile
 	notes          []string
+	store          ledger.Store // nil where there are no books
 }
 
+// mergeGroup is the event of a merge queue.
+const mergeGroup = "merge_group"
+
 // judge makes the statement.
-func (c *change) judge(ctx context.Context) (*budget.Statement, error) {
+func (c *change) judge(ctx context.Context) (statement *budget.Statement, err error) {
 	if err := c.locate(ctx); err != nil {
 		return nil, err
 	}
 	if err := c.policies(ctx); err != nil {
 		return nil, err
 	}
-	statement, err := c.by(ctx, c.policy)
+	if err := c.openBooks(ctx); err != nil {
+		return nil, err
+	}
+	if c.store != nil {
+		defer func() { err = errors.Join(err, c.store.Close()) }()
+	}
+	statement, err = c.by(ctx, c.policy)
 	if err != nil {
 		return nil, err
 	}
@@ -55,9 +66,9 @@ func (c *change) judge(ctx context.Context) (*budget.Statement, error) {
 func (c *change) locate(ctx context.Context) (err error) {
 	s := c.subject
 	switch {
-	case s.Pull > 0 || s.Event == "merge_group":
+	case s.Pull > 0 || s.Event == mergeGroup:
 		ref := s.Branch
-		if s.Event == "merge_group" {
+		if s.Event == mergeGroup {
 			ref = s.Base
 		}
 		if c.tip, c.mergeBase, err = c.repo.Meet(ctx, ref, s.Head); err != nil {
@@ -169,7 +180,7 @@ func (c *change) by(ctx context.Context, policy *budget.Policy) (*budget.Stateme
 		return nil, err
 	}
 	about := budget.Case{Branch: c.subject.Branch, Pull: c.subject.Pull, Jobs: c.in.job, HeadCommit: c.subject.Head, BaseCommit: c.tip, Now: c.now,
-		PolicySource: c.source(), Adoption: c.adoption()}
+		PolicySource: c.source(), Adoption: c.adoption(), Repository: c.repository(), MergeGroup: c.subject.Event == mergeGroup}
 	err := l.sides(&about, c.in.head, c.in.base, "")
 	if err != nil {
 		return nil, err
@@ -178,6 +189,9 @@ func (c *change) by(ctx context.Context, policy *budget.Policy) (*budget.Stateme
 		tellFindings(c.s.err, l, about.Head, about.Base)
 	}
 	if about.Commits, err = readCommits(ctx, c.repo, c.subject.Head, c.mergeBase, about.Head, about.Base); err != nil {
+		return nil, err
+	}
+	if err := c.books(ctx, l, &about); err != nil {
 		return nil, err
 	}
 	about.Notes = slices.Concat(c.notes, l.notes)
@@ -233,7 +247,7 @@ func (c *change) propose(ctx context.Context, s *budget.Statement) error {
 	}
 	proposal.Preview = preview
 	s.Propose(proposal)
-	return nil
+	return c.replay(ctx, s)
 }
 
 func sameFiles(a, b []budget.PolicyFile) bool {

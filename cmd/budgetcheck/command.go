@@ -37,6 +37,9 @@ func commands() []command {
 	return []command{
 		{"gate", "judge head runs against the policy and write the statement", gate},
 		{"weigh", "weigh records, without any rule", weigh},
+		{"book", "enter runs, releases and late prices into the ledger", book},
+		{"forecast", "tell where the periods of budgets will end", forecast},
+		{"replay", "judge the past changes in the ledger by a policy", replay},
 		{"vet", "check policy, records and series", vet},
 		{"init", "write a starter policy and workflow", initialise},
 		{"action", "be the step of action.yml", action},

@@ -9,6 +9,7 @@ import (
 	"budgetcheck/budget"
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/inputs"
+	"budgetcheck/budget/ledger"
 )
 
 // mostCommits bounds how many commits that records name are looked up.
@@ -45,6 +46,54 @@ func readCommits(ctx context.Context, repo inputs.Repository, head, mergeBase st
 		}
 	}
 	return c, nil
+}
+
+// nameMore adds commits that booked runs name. Those that are not there are
+// left out, as far as they were not looked up before.
+func nameMore(ctx context.Context, repo inputs.Repository, c *budget.Commits, ids []string) error {
+	for _, id := range ids {
+		if _, known := c.Named[id]; known || !inputs.FullID(id) || len(c.Named) > mostCommits {
+			continue
+		}
+		t, err := repo.Tree(ctx, id)
+		switch {
+		case err == nil:
+			c.Named[id] = t
+		case !errors.Is(err, inputs.ErrUnknown):
+			return fmt.Errorf("commit %s, which the books name, cannot be looked up: %w", id, err)
+		}
+	}
+	return nil
+}
+
+// nameCommits looks the commits of booked runs up in the local clone.
+func (l *loader) nameCommits(ctx context.Context, c *budget.Case) {
+	if c.Commits == nil {
+		return
+	}
+	git, err := inputs.OpenGit(ctx, ".")
+	if err == nil {
+		err = nameMore(ctx, git, c.Commits, c.Books.Unplaced(c))
+	}
+	if err != nil {
+		l.notes = append(l.notes, err.Error())
+	}
+}
+
+// tags are the releases of a branch that tags of the local clone tell of.
+func (l *loader) tags(ctx context.Context, branch string) (marks []*ledger.Mark) {
+	git, err := inputs.OpenGit(ctx, ".")
+	if err != nil {
+		return nil
+	}
+	tags, err := git.Tags(ctx, l.policy.Account.ReleaseTags, branch)
+	if err != nil {
+		l.notes = append(l.notes, fmt.Sprintf("tags are not read: %v", err))
+	}
+	for _, t := range tags {
+		marks = append(marks, &ledger.Mark{Kind: ledger.KindRelease, Tag: t.Name, Commit: t.Commit, Branch: branch, At: t.At})
+	}
+	return marks
 }
 
 // commits reads the commits that the flags name from the local clone. Without

@@ -17,12 +17,18 @@ const policyName = "budgetcheck.toml"
 // options are the flags that commands share by name.
 type options struct {
 	policy, head, base, grid, job list
+	beside                        list
 	branch                        string
 	pull                          int
 	commit, baseCommit            string
 	now                           string
 	out                           string
 	json                          bool
+
+	ledger, repo              string
+	run, attempt, part, parts string
+	release, correct          string
+	book, settle, enforce     bool
 
 	rest []string // arguments after the flags
 }
@@ -64,6 +70,7 @@ func (o *options) define(set *flag.FlagSet, flags []string) {
 		does string
 	}{
 		"policy": {&o.policy, "policy `file` (default " + policyName + "); may be repeated, tables add up"},
+		"beside": {&o.beside, "policy `file` to try beside -policy; may be repeated"},
 		"head":   {&o.head, "`glob` of the records to judge; may be repeated"},
 		"base":   {&o.base, "`glob` of the records to compare with; may be repeated"},
 		"job":    {&o.job, "`glob` of the jobs to judge (default: all); may be repeated"},
@@ -78,6 +85,23 @@ func (o *options) define(set *flag.FlagSet, flags []string) {
 		"base-commit": {&o.baseCommit, "`id` of the commit to merge into; jobs whose inputs are those of the merge base are not asked for runs"},
 		"now":         {&o.now, "RFC 3339 `time` to judge at, for repeatable output (default: the clock)"},
 		"out":         {&o.out, "`folder` to write to"},
+		"ledger":      {&o.ledger, "`URL` of the books: file:PATH, git:BRANCH, git:REMOTE#BRANCH or postgres://... (default: BUDGETCHECK_LEDGER)"},
+		"repo":        {&o.repo, "`name` of this repository in books that several share (default: what the CI host tells)"},
+		"run":         {&o.run, "`name` of the run, for records that do not tell it (default: what CI host or scheduler tell; so for attempt, part, parts)"},
+		"attempt":     {&o.attempt, "`number` of the attempt, for records that do not tell it"},
+		"part":        {&o.part, "`name` of the part, for records that do not tell it"},
+		"parts":       {&o.parts, "`number` of parts in all, for records that do not tell it"},
+		"release":     {&o.release, "`tag` of a release to enter: it ends one account of -branch and opens the next"},
+		"correct":     {&o.correct, "`reason`: runs that are booked with other content are entered as corrections"},
+	}
+	switches := map[string]struct {
+		to   *bool
+		does string
+	}{
+		"json":    {&o.json, "write JSON to standard output"},
+		"book":    {&o.book, "book the head runs first, whatever the verdict"},
+		"settle":  {&o.settle, "price again what was booked before its series arrived"},
+		"enforce": {&o.enforce, "exit 1 if the next run of -job does not fit"},
 	}
 	for _, f := range flags {
 		switch {
@@ -87,8 +111,8 @@ func (o *options) define(set *flag.FlagSet, flags []string) {
 			set.StringVar(texts[f].to, f, "", texts[f].does)
 		case f == "pull":
 			set.IntVar(&o.pull, f, 0, "`number` of the pull request")
-		case f == "json":
-			set.BoolVar(&o.json, f, false, "write JSON to standard output")
+		case switches[f].to != nil:
+			set.BoolVar(switches[f].to, f, false, switches[f].does)
 		}
 	}
 }

@@ -1,22 +1,26 @@
 package main
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"io"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 
 	"budgetcheck/budget"
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/ledger"
 	"budgetcheck/report"
 )
 
 // gate judges head runs and writes the statement.
 func gate(args []string, s streams) (int, error) {
 	var o options
-	err := o.parse("gate", args, s, "policy", "head", "base", "grid", "job", "branch", "pull", "commit", "base-commit", "now", "out", "json")
+	err := o.parse("gate", args, s, "policy", "head", "base", "grid", "job", "branch", "pull", "commit", "base-commit",
+		"ledger", "repo", "book", "now", "out", "json")
 	if err != nil {
 		return 0, err
 	}
@@ -52,15 +56,69 @@ func (o *options) judge(s streams) (*budget.Statement, error) {
 	if err := l.readSeries(o); err != nil {
 		return nil, err
 	}
+	from := surroundings{o, s.getenv}
+	if o.book {
+		if l.fill, err = from.fill(); err != nil {
+			return nil, err
+		}
+	}
 	c := budget.Case{Branch: o.branch, Pull: o.pull, Jobs: o.job, HeadCommit: o.commit, BaseCommit: o.baseCommit, Now: now,
-		PolicySource: strings.Join(policy.Files, " and ")}
-	if err := l.sides(&c, o.head, o.base, "-"); err != nil {
+		PolicySource: strings.Join(policy.Files, " and "), Repository: from.repository()}
+	if err := l.sides(&c, withoutLedger(o.head), o.base, "-"); err != nil {
 		return nil, err
 	}
 	tellFindings(s.err, l, c.Head, c.Base)
 	c.Commits = l.commits(o, c.Head, c.Base)
+	if err := l.consult(context.Background(), from, &c, s); err != nil {
+		return nil, err
+	}
 	c.Notes = l.notes
 	return policy.Judge(c), nil
+}
+
+// fromLedger is what -head says for the runs in the books. They are pooled with
+// given ones anyway, so that it only says so.
+const fromLedger = "ledger:"
+
+func withoutLedger(globs []string) []string {
+	return slices.DeleteFunc(slices.Clone(globs), func(g string) bool { return g == fromLedger })
+}
+
+// consult books the head runs, where that is asked for, and reads from the
+// ledger what the case takes. Without a ledger the case has no books.
+func (l *loader) consult(ctx context.Context, from surroundings, c *budget.Case, s streams) (err error) {
+	if from.ledger() == "" {
+		if from.o.book || slices.Contains(from.o.head, fromLedger) {
+			return errors.New("no ledger is named to book in or to read; set -ledger or BUDGETCHECK_LEDGER")
+		}
+		return nil
+	}
+	store, err := openLedger(ctx, from)
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, store.Close()) }()
+	if from.o.book {
+		b := &booking{o: from.o, s: streams{out: s.err, err: s.err, clock: s.clock, getenv: s.getenv}, from: from, now: c.Now, store: store, l: l}
+		if err := b.parts(ctx, c.Head); err != nil {
+			return err
+		}
+	}
+	return l.readBooks(ctx, store, c)
+}
+
+// readBooks reads what the case takes, and the commits that booked runs name.
+func (l *loader) readBooks(ctx context.Context, store ledger.Store, c *budget.Case) error {
+	if l.policy.NeedsTags(c.Branch) {
+		c.Tags = l.tags(ctx, c.Branch)
+	}
+	read, err := l.policy.Consult(ctx, store, c, l.set)
+	if err != nil {
+		return fmt.Errorf("the ledger cannot be read: %w", err)
+	}
+	c.Books = read
+	l.nameCommits(ctx, c)
+	return nil
 }
 
 // tellFindings lists what is wrong in series and records, file by file. It

@@ -25,6 +25,7 @@ import (
 type loader struct {
 	policy  *budget.Policy
 	noLinks bool // hostile records: a link could lead to any file of the machine
+	fill    func(*record.Open) // completes open lines; nil: nothing does
 	series  []*grid.File
 	set     *grid.Set
 	unread  []finding.Finding // what could not be read at all
@@ -216,6 +217,7 @@ func (l *loader) weighFile(path string, see func(*record.Reader, *footprint.Part
 		return nil, err
 	}
 	defer r.Close()
+	r.Fill(l.fill)
 	part, err := l.policy.Weigh(r, l.set)
 	if err == nil && see != nil {
 		see(r, part)

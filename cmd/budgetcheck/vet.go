@@ -1,24 +1,28 @@
 package main
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"io"
 	"os"
+	"strings"
 
 	"budgetcheck/budget"
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/record"
 )
 
 // vet checks a policy, records and series by themselves, without a verdict.
 func vet(args []string, s streams) (int, error) {
 	var o options
-	if err := o.parse("vet", args, s, "policy", "head", "base", "grid"); err != nil {
+	if err := o.parse("vet", args, s, "policy", "head", "base", "grid", "ledger"); err != nil {
 		return 0, err
 	}
 	records := append(append(o.head, o.base...), o.rest...)
-	policy, lines, err := o.vetPolicy(len(records)+len(o.grid) > 0)
+	from := surroundings{&o, s.getenv}
+	policy, lines, err := o.vetPolicy(len(records)+len(o.grid) > 0 || o.ledger != "")
 	if err != nil {
 		return 0, err
 	}
@@ -30,7 +34,7 @@ func vet(args []string, s streams) (int, error) {
 		lines = append(lines, f.Findings.Lines()...)
 	}
 	read := 0
-	_, err = l.weighAll(records, "records", func(r *record.Reader, p *footprint.Part) {
+	parts, err := l.weighAll(records, "records", func(r *record.Reader, p *footprint.Part) {
 		read++
 		lines = append(lines, r.Findings().Lines()...)
 		lines = append(lines, r.Unknown().Lines()...)
@@ -47,7 +51,36 @@ func vet(args []string, s streams) (int, error) {
 	}
 	lines = append(lines, l.missing...)
 	lines = append(lines, l.notes...)
-	return tellVetted(s.out, lines, len(policy.Files), len(l.series), read)
+	ledgers := 0
+	if o.ledger != "" {
+		found, err := vetLedger(from)
+		if err != nil {
+			return 0, err
+		}
+		lines, ledgers = append(lines, found...), 1
+	}
+	runs, _ := policy.Runs(parts)
+	for _, w := range policy.Blunt(runs) {
+		tell(s.err, "warning: "+w.String())
+	}
+	seen := []string{count(len(policy.Files), "policy file"), count(len(l.series), "series file"), count(read, "record")}
+	if ledgers > 0 {
+		seen = append(seen, count(ledgers, "ledger"))
+	}
+	return tellVetted(s.out, lines, seen)
+}
+
+// vetLedger checks all of a ledger.
+func vetLedger(from surroundings) (lines []string, err error) {
+	ctx := context.Background()
+	err = withLedger(ctx, from, func(store ledger.Store) error {
+		found, err := store.Vet(ctx)
+		if err == nil {
+			lines = found.Lines()
+		}
+		return err
+	})
+	return lines, err
 }
 
 // vetPolicy reads the policy for its findings. One that is not there is fine
@@ -75,11 +108,13 @@ func (o *options) vetPolicy(otherwise bool) (*budget.Policy, []string, error) {
 	return p, nil, nil
 }
 
-func tellVetted(w io.Writer, lines []string, policies, series, records int) (int, error) {
+// tellVetted lists what was found, or else what was looked at.
+func tellVetted(w io.Writer, lines, seen []string) (int, error) {
 	if tell(w, lines...); len(lines) > 0 {
 		return exitFinding, nil
 	}
-	_, err := fmt.Fprintf(w, "nothing found in %s, %s and %s\n", count(policies, "policy file"), count(series, "series file"), count(records, "record"))
+	last := len(seen) - 1
+	_, err := fmt.Fprintf(w, "nothing found in %s and %s\n", strings.Join(seen[:last], ", "), seen[last])
 	return exitDone, err
 }
 
