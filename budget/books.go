@@ -8,6 +8,7 @@ import (
 	"sort"
 
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/forecast"
 	"budgetcheck/budget/grid"
 	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/record"
@@ -23,6 +24,7 @@ type Books struct {
 	commit  map[string][]*footprint.Part
 	inputs  map[string][]*footprint.Part
 	longest unit.Duration // of any part
+	known   forecast.Known
 }
 
 // Books restates what was read of a ledger with the policy's facts. The series

@@ -16,6 +16,7 @@ type judgement struct {
 	standing   *standing
 	head, base []*footprint.Run // head runs of which something is asked
 	stray      []*footprint.Part
+	pasts      map[pastKey]pastRuns
 	released   []*footprint.Run // before the last release; nil until they are asked for
 }
 

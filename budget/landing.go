@@ -118,10 +118,10 @@ func (j *judgement) land(b *Budget, s span, current unit.Instant) Landing {
 func (j *judgement) landed(b *Budget, s span, spent *tally, jobs []forecast.Job) landed {
 	if b.Limit.Energy != nil {
 		return figures(forecast.LandEnergy(forecast.Budget[unit.Energy]{Period: s.Period, Now: j.c.Now,
-			Spent: spent.energy.Value(), Limit: *b.Limit.Energy, Jobs: jobs}))
+			Spent: spent.energy.Value(), Limit: *b.Limit.Energy, Jobs: jobs, Known: &j.c.Books.known}))
 	}
 	return figures(forecast.LandMass(forecast.Budget[unit.Mass]{Period: s.Period, Now: j.c.Now,
-		Spent: spent.mass.Value(), Limit: *b.Limit.Mass, Jobs: jobs}))
+		Spent: spent.mass.Value(), Limit: *b.Limit.Mass, Jobs: jobs, Known: &j.c.Books.known}))
 }
 
 func figures[Q forecast.Quantity](l forecast.Landing[Q]) landed {
@@ -193,12 +193,28 @@ type pastRuns struct {
 	series *grid.Series
 }
 
+// pastKey is what the past runs of a job turn on.
+type pastKey struct {
+	job   *Job
+	stage string // glob of the budget
+}
+
 // lastRuns is how many past runs speak for the next ones.
 const lastRuns = 30
 
 // past reads the job's runs on the branch, newest first, until there are
 // enough and four weeks are covered.
 func (j *judgement) past(b *Budget, job *Job) (past pastRuns) {
+	k := pastKey{job, b.Stage}
+	if known, ok := j.pasts[k]; ok {
+		return known
+	}
+	defer func() {
+		if j.pasts == nil {
+			j.pasts = map[pastKey]pastRuns{}
+		}
+		j.pasts[k] = past
+	}()
 	all := before(j.c.Books.account[j.c.Branch], j.c.Now)
 	past.opened = j.c.Now
 	if len(all) > 0 {

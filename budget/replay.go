@@ -3,7 +3,10 @@ package budget
 import (
 	"cmp"
 	"fmt"
+	"runtime"
 	"slices"
+	"sync"
+	"sync/atomic"
 
 	"budgetcheck/budget/footprint"
 	"budgetcheck/budget/forecast"
@@ -134,13 +137,23 @@ func pastChanges(read *ledger.Books, c Case) (changes []pastChange, without int)
 	return changes, without
 }
 
-// judge judges the changes by one policy.
-func (p *Replayed) judge(read *ledger.Books, c Case, past []pastChange) (verdicts []*Statement) {
+// judge judges the changes by one policy, several at once: none sees another.
+func (p *Replayed) judge(read *ledger.Books, c Case, past []pastChange) []*Statement {
 	books := p.Policy.Books(read, p.Set)
-	for _, change := range past {
-		verdicts = append(verdicts, p.Policy.Judge(Case{Branch: c.Branch, Pull: change.pull, HeadCommit: change.commit, Now: change.at,
-			PolicySource: p.Source, Repository: c.Repository, Tags: c.Tags, Books: books, Past: true}))
+	read.Spent(ledger.Window{}) // makes the index, which must not be made twice at once
+	verdicts := make([]*Statement, len(past))
+	var next atomic.Int64
+	var all sync.WaitGroup
+	for range runtime.GOMAXPROCS(0) {
+		all.Go(func() {
+			for n := next.Add(1) - 1; n < int64(len(past)); n = next.Add(1) - 1 {
+				change := past[n]
+				verdicts[n] = p.Policy.Judge(Case{Branch: c.Branch, Pull: change.pull, HeadCommit: change.commit, Now: change.at,
+					PolicySource: p.Source, Repository: c.Repository, Tags: c.Tags, Books: books, Past: true})
+			}
+		})
 	}
+	all.Wait()
 	return verdicts
 }
 

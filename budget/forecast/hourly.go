@@ -23,6 +23,7 @@ const memory = 10 * unit.Year
 type hourly struct {
 	first, end int64 // the first hour, and the first that is not known any more
 	cells      []cell
+	cut        *cell // instead of the last one, which now cuts; nil if it does not
 }
 
 // cell is one hour.
@@ -108,7 +109,15 @@ func (h *hourly) at(hour int64) float64 {
 	if hour < h.first || hour >= h.end {
 		return math.NaN()
 	}
-	return h.cells[hour-h.first].value
+	return h.cell(hour).value
+}
+
+// cell is that of a known hour.
+func (h *hourly) cell(hour int64) *cell {
+	if h.cut != nil && hour == h.end-1 {
+		return h.cut
+	}
+	return &h.cells[hour-h.first]
 }
 
 // nights is how many values of the column of an hour are known.
@@ -124,7 +133,7 @@ func (h *hourly) column(hour int64) (float64, int) {
 	if hour < h.first || hour >= h.end {
 		return 0, 0
 	}
-	c := &h.cells[hour-h.first]
+	c := h.cell(hour)
 	return c.sum, c.count
 }
 

@@ -18,6 +18,8 @@ type Budget[Q Quantity] struct {
 	Spent  Q            // in the period so far
 	Limit  Q
 	Jobs   []Job // all that are charged to it
+
+	Known *Known // of the jobs' series; nil: they are read anew
 }
 
 // Landing is where the period of a budget will end if runs go on as scheduled.
@@ -53,7 +55,7 @@ func LandMass(b Budget[unit.Mass]) Landing[unit.Mass] {
 	known := map[*grid.Series]*hourly{}
 	return land(b, func(j Job) *estimate {
 		if known[j.Series] == nil {
-			known[j.Series] = asOf(j.Series, b.Now)
+			known[j.Series] = b.Known.asOf(j.Series, b.Now)
 		}
 		return j.mass(b.Period, b.Now, known[j.Series])
 	})
