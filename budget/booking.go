@@ -53,8 +53,12 @@ func (p *Policy) Entry(part *footprint.Part, b Booking) (*ledger.Entry, error) {
 	if job != nil && job.Work != nil {
 		part.Pilot = part.Pilot || part.Unfinished(job.Work.Amount)
 	}
+	var thin string
+	if run := footprint.Combine([]*footprint.Part{part}, p.Method()); len(p.thin(run)) > 0 {
+		thin = p.thin(run)[0].Reason
+	}
 	e := &ledger.Entry{Kind: ledger.KindRun, Repository: b.Repository, Account: account, BookedAt: max(b.Now, part.End),
-		Facts: part.FactsHash(p.Method()), Booked: part.Book(p.Method())}
+		Facts: part.FactsHash(p.Method()), Thin: thin, Booked: part.Book(p.Method())}
 	if t, ok := b.Commits[part.Open.Commit]; ok && job != nil {
 		e.Inputs = newStanding(p, &Case{}).inputs(job, part.Open.Commit, t)
 	}

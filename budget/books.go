@@ -23,6 +23,7 @@ type Books struct {
 	account map[string][]*footprint.Part
 	commit  map[string][]*footprint.Part
 	inputs  map[string][]*footprint.Part
+	key     map[partKey]*footprint.Part
 	longest unit.Duration // of any part
 	known   forecast.Known
 }
@@ -30,7 +31,8 @@ type Books struct {
 // Books restates what was read of a ledger with the policy's facts. The series
 // are for those entries that tell no zone.
 func (p *Policy) Books(read *ledger.Books, set *grid.Set) *Books {
-	b := &Books{ledger: read, account: map[string][]*footprint.Part{}, commit: map[string][]*footprint.Part{}, inputs: map[string][]*footprint.Part{}}
+	b := &Books{ledger: read, account: map[string][]*footprint.Part{}, commit: map[string][]*footprint.Part{}, inputs: map[string][]*footprint.Part{},
+		key: map[partKey]*footprint.Part{}}
 	look := func(o *record.Open) footprint.Facts { return p.facts(o, set) }
 	for _, e := range read.Entries {
 		part := e.Restore(e.Key().String()+" of the books", p.Method(), look)
@@ -42,6 +44,7 @@ func (p *Policy) Books(read *ledger.Books, set *grid.Set) *Books {
 
 func (b *Books) add(part *footprint.Part) {
 	b.all = append(b.all, part)
+	b.key[keyOf(part)] = part
 	b.account[part.Account] = append(b.account[part.Account], part)
 	if c := part.Open.Commit; c != "" {
 		b.commit[c] = append(b.commit[c], part)
@@ -115,8 +118,13 @@ func (j *judgement) headParts() []*footprint.Part {
 	if c.Pull > 0 {
 		h.take(c.Books.account[ledger.PullAccount(c.Pull)], func(p *footprint.Part) bool { return c.HeadCommit != "" || h.recent(p) })
 	}
+	if !c.prospective() {
+		h.newest(own)
+	}
 	if c.HeadCommit != "" {
-		h.take(c.Books.commit[c.HeadCommit], others)
+		for _, commit := range j.standing.alike() {
+			h.take(c.Books.commit[commit], others)
+		}
 		for _, job := range j.policy.Jobs {
 			h.take(c.Books.inputs[j.standing.headInputs(job)], others)
 		}
@@ -140,6 +148,29 @@ func (h *heads) recent(p *footprint.Part) bool {
 		return p.End/unit.Instant(unit.Day) == h.j.c.Now/unit.Instant(unit.Day)
 	}
 	return h.j.c.Now.Sub(p.End) <= h.j.policy.Evidence.MaxAge
+}
+
+// newest takes the last run of each job that has none of late and whose inputs
+// are the head's: what the same inputs gave does not age.
+func (h *heads) newest(own map[*Job]bool) {
+	c := h.j.c
+	if c.HeadCommit == "" {
+		return
+	}
+	last := map[*Job]string{}
+	parts := before(c.Books.account[c.Branch], c.Now)
+	for n := len(parts) - 1; n >= max(0, len(parts)-farBack); n-- {
+		p := parts[n]
+		job := h.j.policy.job(p.Open.Job, p.Open.Stage)
+		if job == nil || own[job] || last[job] != "" && last[job] != p.Open.Run {
+			continue
+		}
+		before := len(h.parts)
+		h.take(parts[n:n+1], func(*footprint.Part) bool { return true })
+		if len(h.parts) > before {
+			last[job] = p.Open.Run
+		}
+	}
 }
 
 // take takes those of the parts, which are in order of start, that stand for
@@ -207,8 +238,11 @@ func (j *judgement) baseOf(r *footprint.Run, earlier []*footprint.Part, isHead m
 			break
 		}
 	}
-	chosen := append(same, other[:min(len(other), max(most-len(same), 0))]...)
-	for _, k := range chosen {
+	if len(same) > 0 { // filled up with earlier ones, not with what came after them
+		first := pieces[same[len(same)-1]][0].Open.At
+		other = slices.DeleteFunc(other, func(k run) bool { return pieces[k][0].Open.At >= first })
+	}
+	for _, k := range append(same, other[:min(len(other), max(most-len(same), 0))]...) {
 		parts = append(parts, pieces[k]...)
 	}
 	return parts

@@ -11,7 +11,6 @@ import (
 	"pgregory.net/rapid"
 
 	"budgetcheck/budget"
-	"budgetcheck/budget/ledger"
 	"budgetcheck/budget/record"
 	"budgetcheck/budget/unit"
 )
@@ -62,9 +61,9 @@ func TestDoubtfulRunCountsOnce(t *testing.T) {
 func TestPartsFromFileAndBooks(t *testing.T) {
 	s := sceneOf(night(part("0"), ranOn("b"))).onCommit("b")
 	s.books = append(bookedNights(3, 1, ranOn("a")), bookedAs("main", night(part("1"), ranOn("b"))))
-	s.policy = monthly("1 kg", "")
+	s.policy = monthly("10 kg", "")
 	st := s.judge(t)
-	assert.InDelta(t, 350.001, grams(t, st.Accounts[1].Carried), 1e-3)
+	assert.InDelta(t, 400, grams(t, st.Accounts[1].Carried), 1e-3)
 	assert.Equal(t, budget.Within, ruling(t, st, "month").State, ruling(t, st, "month").Reason)
 	assert.InDelta(t, 100.001, *ruling(t, st, "one training").Observed, 1e-3)
 	s.head = nil // the other part never came
@@ -230,26 +229,4 @@ func TestBooksEqualFiles(t *testing.T) {
 		assert.Equal(t, files, numbers(t, s.judge(t)), "booked\n%s", s.policy)
 		assert.Equal(t, files, both, "booked and given")
 	})
-}
-
-// What a correction says stands in for what was booked first.
-func TestSettledEntry(t *testing.T) {
-	early := func(series string) (*scene, *ledger.Books) {
-		s := sceneOf()
-		s.series, s.policy = series, monthly("1 kg", "")
-		s.books = bookedNights(3, 0, ranOn("b"))
-		return s, s.ledger(t, policyOf(t, s.policy), seriesOf(t, s.series))
-	}
-	ended := header + row(-40*24*60, -60, "100") // an hour before the last night
-	s, read := early(ended)
-	p, set := policyOf(t, s.policy), seriesOf(t, header+row(-40*24*60, -60, "100")+row(-60, 24*60, "150"))
-	corrections := p.Settle(read.Entries, set, now)
-	require.Len(t, corrections, 1, "only the last night was priced with what was expected")
-	assert.Equal(t, read.Entries[2].ID(), corrections[0].Corrects)
-	assert.Equal(t, []string{"b0"}, []string{corrections[0].Run.Run})
-	settled := ledger.Merge(&ledger.Books{Entries: corrections}, read)
-	c := s.onCommit("b").about
-	c.Books = p.Books(settled, set)
-	assert.InDelta(t, 350, spentIn(t, p.Judge(c)), 1e-9)
-	assert.Empty(t, p.Settle(settled.Entries, set, now), "settled is settled")
 }

@@ -111,6 +111,9 @@ type amount struct {
 	hasU  bool
 }
 
+// provenAlone is the reason where what is proven to be spent decides.
+const provenAlone = "the measured, priced part alone passes the limit"
+
 // judgeRun judges one run. Doubtful evidence leaves the ruling unproven, but
 // what is proven to be spent is spent: where the measured, priced part alone
 // passes the limit, the run is over however thin the rest.
@@ -122,6 +125,11 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 		return r
 	}
 	if run.Projection != nil && len(b.Limit.doubts(run)) == 0 {
+		if proven := b.Limit.proven(run, j.declared()); b.Limit.Rate == nil && j.state(b, proven) == Over {
+			j.settle(&r, b, proven)
+			r.Reason = provenAlone
+			return r
+		}
 		return j.judgePilot(b, run)
 	}
 	a, known := b.Limit.of(run, j.policy.Method().Uncertainty)
@@ -138,7 +146,7 @@ func (j *judgement) judgeRun(b *Budget, run *footprint.Run) Ruling {
 	proven := b.Limit.proven(run, j.policy.Method().Uncertainty)
 	if b.Limit.provable(run) && j.state(b, proven) == Over {
 		j.settle(&r, b, proven)
-		r.Reason = "the measured, priced part alone passes the limit"
+		r.Reason = provenAlone
 		return r
 	}
 	r.State, r.Reason, r.Conformance = Unproven, "the evidence is in doubt", nil

@@ -85,7 +85,8 @@ func (j *judgement) change(p pair) Change {
 // isNew tells whether the job has never run on the branch, as far as the books
 // reach: then all of it is this change's. Without books nobody knows.
 func (j *judgement) isNew(p pair) bool {
-	return j.c.Books != nil && !slices.ContainsFunc(j.c.Books.account[j.c.Branch], func(part *footprint.Part) bool {
+	first := p.head[0].Start
+	return j.c.Books != nil && !slices.ContainsFunc(before(j.c.Books.account[j.c.Branch], first), func(part *footprint.Part) bool {
 		return part.Open.Job == p.job && part.Open.Stage == p.stage
 	})
 }

@@ -35,6 +35,17 @@ type consulting struct {
 	policy   *Policy
 	c        *Case
 	standing *standing
+	release  unit.Instant // before which runs are compared with; 0: no rule asks for that
+}
+
+// releaseBase is the last release of the branch, if a regression compares with
+// the runs before it.
+func (j *judgement) releaseBase() unit.Instant {
+	asks := slices.ContainsFunc(j.policy.Regressions, func(r *Regression) bool { return r.Against == "release" && matches(r.Branch, j.c.Branch) })
+	if m := j.lastRelease(j.c.Now); asks && m != nil {
+		return m.At
+	}
+	return 0
 }
 
 func (q *consulting) read() (*ledger.Books, error) {
@@ -45,6 +56,7 @@ func (q *consulting) read() (*ledger.Books, error) {
 	j := judgement{policy: q.policy, c: &Case{Branch: q.c.Branch, Pull: q.c.Pull, Now: q.c.Now, Repository: q.c.Repository, Tags: q.c.Tags,
 		Books: &Books{ledger: &ledger.Books{Marks: marks}}}}
 	windows := j.windows()
+	q.release = j.releaseBase()
 	var read *ledger.Books
 	if sums, ok := q.store.(ledger.Summing); ok {
 		read, err = q.summed(sums, windows, j.wholePeriods())
@@ -138,6 +150,9 @@ func (q *consulting) summed(sums ledger.Summing, windows, whole []ledger.Window)
 	}
 	c, since := q.c, q.c.Now.Add(-farthest)
 	queries := []ledger.Query{{Accounts: []string{c.Branch}, Since: since, Last: lastRuns + max(lastRuns, q.policy.baseRuns(c.Branch))}}
+	if q.release > 0 {
+		queries = append(queries, ledger.Query{Accounts: []string{c.Branch}, Until: q.release, Last: 2 * q.policy.baseRuns(c.Branch)})
+	}
 	if c.Pull > 0 {
 		queries = append(queries, ledger.Query{Accounts: []string{ledger.PullAccount(c.Pull)}})
 	}
@@ -213,7 +228,10 @@ func (q *consulting) headSpan(read *ledger.Books) (from, to unit.Instant, ok boo
 // back where the jobs have too few runs there.
 func (q *consulting) whole(windows []ledger.Window) (*ledger.Books, error) {
 	now := q.c.Now
-	since := now.Add(-lately)
+	since, limit := now.Add(-lately), now.Add(-farthest)
+	if q.release > 0 {
+		since, limit = min(since, q.release.Add(-lately)), min(limit, q.release.Add(-farthest))
+	}
 	for _, w := range windows {
 		since = min(since, w.From)
 	}
@@ -224,10 +242,10 @@ func (q *consulting) whole(windows []ledger.Window) (*ledger.Books, error) {
 	}
 	for {
 		read, err := q.store.Read(q.ctx, ledger.Query{Repository: q.c.Repository, Since: since})
-		if err != nil || since <= now.Add(-farthest) || q.enough(read) {
+		if err != nil || since <= limit || q.enough(read) {
 			return read, err
 		}
-		since = max(now.Add(-2*now.Sub(since)), now.Add(-farthest))
+		since = max(now.Add(-2*now.Sub(since)), limit)
 	}
 }
 
@@ -237,6 +255,9 @@ func (q *consulting) enough(read *ledger.Books) bool {
 	for _, job := range q.policy.Jobs {
 		runs := map[string]bool{}
 		for _, e := range read.Entries {
+			if q.release > 0 && e.End > q.release {
+				continue
+			}
 			if e.Account == q.c.Branch && e.Job == job.Name && (job.Stage == "" || e.Stage == job.Stage) && e.Outcome.Evidence() {
 				runs[e.Run.Run] = true
 			}

@@ -117,18 +117,26 @@ func (p *Policy) examineWork(r *footprint.Run, j *Job, now unit.Instant) {
 
 // examineRecord checks coverage, grade and times.
 func (p *Policy) examineRecord(r *footprint.Run, now unit.Instant) {
-	e := p.Evidence
-	if r.Coverage != nil && *r.Coverage < e.MinCoverage {
-		got, want := unit.Apart(*r.Coverage, e.MinCoverage)
-		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("coverage of run %s is %s, below %s", r.Run, got, want),
-			Observed: float64(*r.Coverage), Limit: float64(e.MinCoverage), Unit: "share"})
-	}
-	if r.Grade != "" && r.Grade.Worse(e.MinGrade) {
-		r.Doubt(footprint.Doubt{Reason: fmt.Sprintf("run %s is of grade %s; the policy asks for %s or better", r.Run, r.Grade, e.MinGrade)})
+	for _, d := range p.thin(r) {
+		r.Doubt(d)
 	}
 	if ahead := r.End.Sub(now); ahead > skew {
 		r.Doubt(footprint.Doubt{Refutes: true, Reason: fmt.Sprintf("run %s ends in the future, at %s", r.Run, r.End)})
 	}
+}
+
+// thin are the doubts about coverage and grade.
+func (p *Policy) thin(r *footprint.Run) (doubts []footprint.Doubt) {
+	e := p.Evidence
+	if r.Coverage != nil && *r.Coverage < e.MinCoverage {
+		got, want := unit.Apart(*r.Coverage, e.MinCoverage)
+		doubts = append(doubts, footprint.Doubt{Reason: fmt.Sprintf("coverage of run %s is %s, below %s", r.Run, got, want),
+			Observed: float64(*r.Coverage), Limit: float64(e.MinCoverage), Unit: "share"})
+	}
+	if r.Grade != "" && r.Grade.Worse(e.MinGrade) {
+		doubts = append(doubts, footprint.Doubt{Reason: fmt.Sprintf("run %s is of grade %s; the policy asks for %s or better", r.Run, r.Grade, e.MinGrade)})
+	}
+	return doubts
 }
 
 // examineHead checks what is asked of head runs only.

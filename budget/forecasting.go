@@ -24,11 +24,18 @@ func (p *Policy) Forecast(c Case, job string) *Forecast {
 	f := &Forecast{Format: 1, Now: c.Now, Branch: c.Branch, Job: job, Landings: []Landing{}}
 	j := judgement{policy: p, c: &c, s: &Statement{}, standing: newStanding(p, &c)}
 	for _, b := range p.Budgets {
-		if !matches(b.Branch, c.Branch) || !calendar(b.Per) || b.Limit.Rate != nil {
+		if !matches(b.Branch, c.Branch) || b.Per == "run" || b.Per == "pull" || b.Limit.Rate != nil {
 			continue
 		}
 		b = j.lifted(b)
 		s := j.span(b)
+		if !s.ends { // nobody knows when the next release is: only one more run can be told
+			if job != "" && j.concerns(b, job) {
+				t := j.carried(b, s)
+				j.affordable(f, b, t.amount(b.Limit, j.declared()).value, "since "+s.opened)
+			}
+			continue
+		}
 		l := j.land(b, s, s.To)
 		l.State = j.standingAt(b, &l)
 		f.Landings = append(f.Landings, l)
@@ -38,13 +45,11 @@ func (p *Policy) Forecast(c Case, job string) *Forecast {
 			f.Landings = append(f.Landings, then)
 		}
 		if job != "" && j.concerns(b, job) {
-			j.affordable(f, b, &l)
+			j.affordable(f, b, l.figure.spent, "in "+l.Period)
 		}
 	}
 	return f
 }
-
-func calendar(per string) bool { return per != "run" && per != "pull" && per != "release" }
 
 // lifted is the budget with the extra of a waiver in force.
 func (j *judgement) lifted(b *Budget) *Budget {
@@ -84,21 +89,21 @@ func (j *judgement) standingAt(b *Budget, l *Landing) State {
 
 // affordable tells whether one more run of the job, now, fits what is left of
 // the period.
-func (j *judgement) affordable(f *Forecast, b *Budget, l *Landing) {
+func (j *judgement) affordable(f *Forecast, b *Budget, spent float64, period string) {
 	fits := true
 	next := j.nextRun(b, f.Job)
-	limit, spent := b.Limit.base(), l.figure.spent
+	limit := b.Limit.base()
 	switch {
 	case spent >= limit:
 		fits = false
-		f.Reasons = append(f.Reasons, fmt.Sprintf("%s has spent %s of %s in %s", b.Name, b.Limit.text(spent), b.Limit, l.Period))
+		f.Reasons = append(f.Reasons, fmt.Sprintf("%s has spent %s of %s %s", b.Name, b.Limit.text(spent), b.Limit, period))
 	case next == nil:
 		f.Reasons = append(f.Reasons, fmt.Sprintf("no past run of %s tells what its next one takes of %s", f.Job, b.Name))
 		return
 	case spent+*next > limit:
 		fits = false
-		f.Reasons = append(f.Reasons, fmt.Sprintf("the next run of %s takes about %s; %s has %s left of %s in %s",
-			f.Job, b.Limit.text(*next), b.Name, b.Limit.text(limit-spent), b.Limit, l.Period))
+		f.Reasons = append(f.Reasons, fmt.Sprintf("the next run of %s takes about %s; %s has %s left of %s %s",
+			f.Job, b.Limit.text(*next), b.Name, b.Limit.text(limit-spent), b.Limit, period))
 	}
 	if f.Fits == nil || *f.Fits {
 		f.Fits = &fits

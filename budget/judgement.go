@@ -17,7 +17,6 @@ type judgement struct {
 	head, base []*footprint.Run // head runs of which something is asked
 	stray      []*footprint.Part
 	pasts      map[pastKey]pastRuns
-	released   []*footprint.Run // before the last release; nil until they are asked for
 }
 
 func (j *judgement) rule(r Ruling) { j.s.Rulings = append(j.s.Rulings, r) }

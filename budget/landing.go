@@ -97,18 +97,22 @@ func (j *judgement) rateBefore(b *Budget) verdictOn {
 // the period itself is spent in it.
 func (j *judgement) land(b *Budget, s span, current unit.Instant) Landing {
 	l := Landing{Name: b.Name, Per: b.Per, Period: s.Name, Limits: b.Limit}
-	var spent tally
-	if s.To <= current {
-		spent.booked(b, j.c.Books.ledger.Spent(j.window(s)))
+	spent := &tally{}
+	switch {
+	case s.To > current:
+	case j.c.prospective():
+		spent.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
+	default:
+		spent = j.carried(b, s)
 	}
 	jobs, notes := j.landingJobs(b, s)
 	with := jobs
 	if j.c.prospective() {
 		with = j.merged(b, s, jobs)
-		before := j.landed(b, s, &spent, jobs)
+		before := j.landed(b, s, spent, jobs)
 		l.before = &before
 	}
-	l.figure = j.landed(b, s, &spent, with)
+	l.figure = j.landed(b, s, spent, with)
 	l.Notes = slices.Concat(notes, l.figure.notes)
 	l.show(b.Limit, with)
 	return l
@@ -322,7 +326,7 @@ func (j *judgement) ruleLanding(b *Budget, l *Landing) Ruling {
 		closes = false
 	}
 	switch {
-	case f.spent > limit && !closes:
+	case f.spent > limit:
 		r.State, r.Reason = Near, overBefore
 	case r.State == Over && already && !closes:
 		r.State, r.Reason = Near, fmt.Sprintf("%s lands over the limit without this change too", l.Period)

@@ -58,10 +58,9 @@ func (j *judgement) landingAccount(b *Budget, s span, r Ruling, l *Landing) *Acc
 	if b.Limit.Mass == nil {
 		return nil
 	}
-	spent := unit.Mass(0)
 	var all tally
-	all.booked(b, j.c.Books.ledger.Spent(j.window(s)))
-	spent = all.mass.Value()
+	all.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
+	spent := all.mass.Value()
 	return &AccountLine{Name: b.Name, Per: b.Per, Period: s.Name, Brought: &spent, Limit: *b.Limit.Mass, State: r.State, Landing: l, Page: l.page()}
 }
 

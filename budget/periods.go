@@ -56,11 +56,30 @@ func (j *judgement) declared() footprint.Declared { return j.policy.Method().Unc
 func (j *judgement) headTally(b *Budget, s span) *tally {
 	var t tally
 	for _, r := range j.head {
-		if account := r.Account(); b.covers(r.Job, r.Stage) && (account == "" || account == s.account) {
-			t.run(r, j.policy.Method(), s)
+		if b.covers(r.Job, r.Stage) {
+			t.run(r, j.policy.Method(), s, func(p *footprint.Part) bool {
+				account, _ := j.entered(p)
+				return account == s.account || account == "" && j.charged(b)
+			})
 		}
 	}
 	return &t
+}
+
+// entered is the account that a part is booked to, given or not, and whether it
+// is booked at all. Whatever a given part says, one of its name in the books is
+// what was charged.
+func (j *judgement) entered(p *footprint.Part) (account string, booked bool) {
+	if p.Account != "" {
+		return p.Account, true
+	}
+	if j.c.Books == nil {
+		return "", false
+	}
+	if in := j.c.Books.key[keyOf(p)]; in != nil && in.End <= j.c.Now {
+		return in.Account, true
+	}
+	return "", false
 }
 
 // spending judges what an account has spent, this change included.
@@ -97,18 +116,27 @@ func (j *judgement) lands(b *Budget, s span, v *verdictOn) {
 }
 
 // carried is all that an account spent in the span: what is booked, and the
-// head runs that are not.
+// charged parts of head runs that are not.
 func (j *judgement) carried(b *Budget, s span) *tally {
 	var all tally
-	all.booked(b, j.c.Books.ledger.Spent(j.window(s)))
+	all.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
 	for _, r := range j.head {
-		switch account := r.Account(); {
-		case !b.covers(r.Job, r.Stage):
-		case account == "":
-			all.run(r, j.policy.Method(), s)
-		case account == s.account:
-			all.examine(r)
+		if !b.covers(r.Job, r.Stage) {
+			continue
 		}
+		ours := false
+		for _, p := range r.Pieces {
+			account, booked := j.entered(p)
+			ours = ours || account == s.account || !booked && j.charged(b)
+		}
+		if !ours {
+			continue
+		}
+		all.settled(r)
+		if j.charged(b) {
+			all.run(r, j.policy.Method(), s, func(p *footprint.Part) bool { _, booked := j.entered(p); return !booked })
+		}
+		all.examine(b.Limit, r, s)
 	}
 	return &all
 }
@@ -170,12 +198,14 @@ func (j *judgement) rateOver(b *Budget, s span) verdictOn {
 // runsIn are the runs of a budget's account that ended in the span, booked and
 // given, each once.
 func (j *judgement) runsIn(b *Budget, s span) (runs []*footprint.Run) {
-	parts := before(j.c.Books.account[s.account], s.To)
+	until := min(s.To, j.c.Now)
+	parts := before(j.c.Books.account[s.account], until)
 	booked, _ := j.policy.Runs(parts)
 	seen := map[[2]any]bool{}
 	for _, r := range append(append([]*footprint.Run{}, j.head...), booked...) {
-		k, account := [2]any{r.Run, r.Attempt}, r.Account()
-		if seen[k] || !b.covers(r.Job, r.Stage) || account != "" && account != s.account || r.End <= s.From || r.End > s.To {
+		k := [2]any{r.Run, r.Attempt}
+		account, in := j.entered(r.Pieces[0])
+		if seen[k] || !b.covers(r.Job, r.Stage) || in && account != s.account || !in && !j.charged(b) || r.End <= s.From || r.End > until {
 			continue
 		}
 		seen[k] = true
@@ -189,7 +219,7 @@ func (j *judgement) runsIn(b *Budget, s span) (runs []*footprint.Run) {
 func (j *judgement) beforeMerge(b *Budget) verdictOn {
 	s := j.span(b)
 	var t tally
-	t.booked(b, j.c.Books.ledger.Spent(j.window(s)))
+	t.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
 	r := b.ruling(j.c.Branch)
 	j.settle(&r, b, t.amount(b.Limit, j.declared()))
 	r.Reason = "since " + s.opened + "; this change is charged after merge"

@@ -108,7 +108,7 @@ func (j *judgement) pairs(g *Regression) (pairs []pair) {
 func (j *judgement) baseFor(g *Regression, job, stage string) (base []*footprint.Run) {
 	from := j.base
 	if g.Against == "release" {
-		from = j.ofRelease()
+		from = j.ofRelease(job, stage)
 	}
 	for _, r := range from {
 		if r.Job == job && r.Stage == stage && noEvidence(r) == "" {
@@ -118,32 +118,40 @@ func (j *judgement) baseFor(g *Regression, job, stage string) (base []*footprint
 	return base[max(0, len(base)-g.BaseRuns):]
 }
 
-// ofRelease are the runs on the branch before its last release, examined.
-func (j *judgement) ofRelease() []*footprint.Run {
-	if j.released != nil || j.c.Books == nil {
-		return j.released
+// ofRelease are the last runs of a job on the branch before its last release
+// and before the first head run, examined.
+func (j *judgement) ofRelease(job, stage string) (runs []*footprint.Run) {
+	if j.c.Books == nil || len(j.head) == 0 {
+		return nil
 	}
-	j.released = []*footprint.Run{}
+	first := j.head[0].Start
 	mark := j.lastRelease(j.c.Now)
 	if mark == nil {
-		return j.released
+		return nil
 	}
-	parts := before(j.c.Books.account[j.c.Branch], mark.At)
-	most := len(j.policy.Jobs) * j.policy.baseRuns(j.c.Branch) * manyParts
-	runs, _ := j.policy.Runs(parts[max(0, len(parts)-most):])
-	for _, r := range runs {
-		if r.End <= mark.At {
-			j.policy.examineFacts(r, j.c.Now)
-			j.policy.examineRecord(r, j.c.Now)
-			j.released = append(j.released, r)
+	until := min(mark.At, first)
+	most, found := j.policy.baseRuns(j.c.Branch), map[[2]any]bool{}
+	var parts []*footprint.Part
+	earlier := before(j.c.Books.account[j.c.Branch], until)
+	for n := len(earlier) - 1; n >= 0; n-- {
+		p := earlier[n]
+		if p.Open.Job != job || p.Open.Stage != stage || p.End > mark.At {
+			continue
 		}
+		k := [2]any{p.Open.Run, p.Open.Attempt}
+		if !found[k] && len(found) == 2*most { // some may be no evidence
+			break
+		}
+		found[k] = true
+		parts = append(parts, p)
 	}
-	return j.released
+	runs, _ = j.policy.Runs(parts)
+	for _, r := range runs {
+		j.policy.examineFacts(r, j.c.Now)
+		j.policy.examineRecord(r, j.c.Now)
+	}
+	return runs
 }
-
-// manyParts is how many parts a run is thought to have when booked runs are
-// looked for by their parts.
-const manyParts = 8
 
 // noEvidence tells why a run is no evidence in a comparison; "" if it is.
 func noEvidence(r *footprint.Run) string {

@@ -1,9 +1,7 @@
 package budget_test
 
 import (
-	"context"
 	"math"
-	"path/filepath"
 	"strings"
 	"testing"
 
@@ -137,39 +135,16 @@ func TestRareJobAgainstRelease(t *testing.T) {
 	s.policy += "\n[[job]]\nname = \"sound-harbour\"\n"
 	for n := range 170 {
 		s.books = append(s.books, bookedAs("main", night(lasting(unit.Minute), startedAt(two.Add(-11*unit.Day+unit.Duration(n)*5*unit.Minute)), func(o *sketch) {
+			counted(o)
+			o.every = unit.Minute
 			o.open.Run, o.open.Job, o.open.Host, o.watts = "sound"+startOf(o), "sound-harbour", "mole-9", []float64{100, 100, 100, 100 + float64(n)}
 		})))
 	}
-	assert.Equal(t, budget.Over, ruling(t, s.judge(t), "no creep").State, ruling(t, s.judge(t), "no creep").Reason)
+	r := ruling(t, s.judge(t), "no creep")
+	assert.Equal(t, budget.Over, r.State, r.Reason)
 }
 
 func startOf(s *sketch) string { return s.open.At.String() }
-
-// A release of long ago is looked for as far back as it lies.
-func TestConsultReachesRelease(t *testing.T) {
-	s := climbing("release")
-	s.about.Now = now.Add(100 * unit.Day)
-	nights := bookedNights(100, 0, ranOn("a"), scaled(1.2))
-	for n := range nights {
-		nights[n].open.At = nights[n].open.At.Add(100 * unit.Day).Add(-unit.Day)
-		nights[n].open.Run = "n" + startOf(&nights[n].sketch)
-	}
-	s.books = append(s.books[:5], nights...)
-	p, set := policyOf(t, s.policy), seriesOf(t, s.series)
-	read := s.ledger(t, p, set)
-	store, err := ledger.Open(context.Background(), "file:"+filepath.Join(t.TempDir(), "books.ndjson"))
-	require.NoError(t, err)
-	defer func() { require.NoError(t, store.Close()) }()
-	_, err = store.Book(context.Background(), read.Entries, s.marks)
-	require.NoError(t, err)
-	c := s.about
-	head := night(ranOn("b"), scaled(1.2), startedAt(two.Add(100*unit.Day)))
-	c.Head = append(c.Head, weigh(t, p, set, "head.ndjson", head.text(t)))
-	c.Books, err = p.Consult(context.Background(), store, &c, set)
-	require.NoError(t, err)
-	r := ruling(t, p.Judge(c), "no creep")
-	assert.Equal(t, budget.Over, r.State, r.Reason)
-}
 
 // Comparisons of one rule share its error, and so do repeated head runs
 // (Bonferroni): two jobs, of which one ran twice.

@@ -209,12 +209,14 @@ func (p *Replayed) daysOver(read *ledger.Books, c Case) map[string]int {
 	return days
 }
 
-// overNow tells whether a budget over a period is over by what is booked.
+// overNow tells whether a budget over a period is over by what was used by now.
 func (j *judgement) overNow(b *Budget) bool {
 	if !matches(b.Branch, j.c.Branch) || b.Per == "run" || b.Per == "pull" || b.Limit.Rate != nil {
 		return false
 	}
+	w := j.window(j.span(b))
+	w.Known = 0 // a run over midnight is booked in the morning, and was spent the day before
 	var t tally
-	t.booked(b, j.c.Books.ledger.Spent(j.window(j.span(b))))
+	t.booked(b, j.c.Books.ledger.Spent(w), j.policy.Method())
 	return j.state(b, t.amount(b.Limit, footprint.Declared{})) == Over
 }

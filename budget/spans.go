@@ -68,7 +68,7 @@ func (j *judgement) ofBranch(m *ledger.Mark) bool { return m.Branch == j.c.Branc
 
 // window is the part of the span that is over.
 func (j *judgement) window(s span) ledger.Window {
-	return ledger.Window{Repository: j.c.Repository, Account: s.account, From: s.From, To: max(s.From, min(s.To, j.c.Now))}
+	return ledger.Window{Repository: j.c.Repository, Account: s.account, From: s.From, To: max(s.From, min(s.To, j.c.Now)), Known: j.c.Now}
 }
 
 // tally is a sum against a limit, and how far it can be trusted.
@@ -87,10 +87,17 @@ type amountSum struct {
 	energy unit.Sum[unit.Energy]
 }
 
-// booked adds what the books tell of an account.
-func (t *tally) booked(b *Budget, s ledger.Spending) {
+// booked adds what the books tell of an account. What was priced by another
+// method than the policy's is no term of the sum, and leaves it in doubt.
+func (t *tally) booked(b *Budget, s ledger.Spending, m footprint.Method) {
 	for _, line := range s.Lines {
 		if !b.covers(line.Job, line.Stage) {
+			continue
+		}
+		if b.Limit.Energy == nil && (line.Factor != m.Factor || line.Boundary != m.Boundary) {
+			t.doubted = append(t.doubted, line.Job)
+			t.reason = fmt.Sprintf("runs of job %s were priced with the %s factor and the %s boundary, the policy asks for %s and %s",
+				line.Job, line.Factor, line.Boundary, m.Factor, m.Boundary)
 			continue
 		}
 		t.runs += line.Runs
@@ -98,7 +105,11 @@ func (t *tally) booked(b *Budget, s ledger.Spending) {
 		t.energy.Add(line.Facility)
 		t.sure.mass.Add(line.SureG + line.ProvenG)
 		t.sure.energy.Add(line.SureKWh + line.ProvenKWh)
-		t.doubted = append(t.doubted, line.InDoubt...)
+		if b.Limit.Energy != nil {
+			t.doubted = append(t.doubted, line.InDoubtKWh...)
+		} else {
+			t.doubted = append(t.doubted, line.InDoubt...)
+		}
 		t.addTerms(line)
 	}
 }
@@ -119,45 +130,79 @@ func (t *tally) addTerms(line ledger.Spent) {
 	add(&t.terms.Mass, footprint.InputEmbodied, line.Machine, float64(line.Embodied))
 }
 
-// run adds as much of a run as lies within the span.
-func (t *tally) run(r *footprint.Run, m footprint.Method, s span) {
-	t.runs++
+// run adds those parts of a run that wanted names, as much of them as lies
+// within the span.
+func (t *tally) run(r *footprint.Run, m footprint.Method, s span, wanted func(*footprint.Part) bool) {
 	var inside unit.Sum[unit.Energy]
+	touched := false
 	for _, p := range r.Pieces {
+		if !wanted(p) || !s.touches(p.Open.At, p.End) {
+			continue
+		}
+		touched = true
 		b := p.Book(m)
 		in := b.Within(s.From, s.To)
 		mass := in.Operational + in.Embodied
 		t.mass.Add(mass)
 		t.energy.Add(in.Facility)
 		inside.Add(in.Facility)
-		switch {
-		case r.Known():
-			t.sure.mass.Add(mass)
-			t.sure.energy.Add(in.Facility)
-		case !r.Refuted() && b.Start >= s.From && b.End <= s.To:
-			t.sure.mass.Add(b.ProvenG + in.Embodied)
-			t.sure.energy.Add(b.ProvenKWh)
-		}
+		t.certain(r, &b, in, b.Start >= s.From && b.End <= s.To)
 	}
+	if !touched {
+		return
+	}
+	t.runs++
 	share := 1.0
 	if r.Facility != nil && *r.Facility > 0 {
 		share = float64(inside.Value()) / float64(*r.Facility)
 	}
 	t.terms.Mass = t.terms.Mass.Plus(share, r.Terms.Mass)
 	t.terms.Energy = t.terms.Energy.Plus(share, r.Terms.Energy)
-	t.examine(r)
 }
 
-// examine notes what speaks against a run.
-func (t *tally) examine(r *footprint.Run) {
-	if r.Known() {
+// certain adds what of a part is not in doubt, or proven all the same.
+func (t *tally) certain(r *footprint.Run, b *footprint.Booked, in footprint.Slice, whole bool) {
+	proven := whole && !r.Refuted()
+	switch {
+	case r.Known():
+		t.sure.mass.Add(in.Operational + in.Embodied)
+	case proven:
+		t.sure.mass.Add(b.ProvenG + in.Embodied)
+	}
+	switch {
+	case r.Facility != nil && !slices.ContainsFunc(r.Doubts, func(d footprint.Doubt) bool { return !d.Price }):
+		t.sure.energy.Add(in.Facility)
+	case proven:
+		t.sure.energy.Add(b.ProvenKWh)
+	}
+}
+
+// settled drops the doubt that the books have of a run, for it is examined with
+// all its parts, booked and given.
+func (t *tally) settled(r *footprint.Run) {
+	t.doubted = slices.DeleteFunc(t.doubted, func(name string) bool { return name == r.Run })
+}
+
+// touches tells whether a time lies within the span, at least in part.
+func (s span) touches(from, to unit.Instant) bool {
+	return from < s.To && (to > s.From || from >= s.From)
+}
+
+// examine notes what speaks against a run that lies within the span.
+func (t *tally) examine(l Limit, r *footprint.Run, s span) {
+	doubts := l.doubts(r)
+	unknown := r.Total == nil
+	if l.Energy != nil {
+		unknown = r.Facility == nil
+	}
+	if !s.touches(r.Start, r.End) || len(doubts) == 0 && !unknown {
 		return
 	}
 	t.doubted = append(t.doubted, r.Run)
 	if t.reason == "" {
-		t.reason = "the total of run " + r.Run + " is not known"
-		if len(r.Doubts) > 0 {
-			t.reason = r.Doubts[0].Reason
+		t.reason = "what run " + r.Run + " took is not known"
+		if len(doubts) > 0 {
+			t.reason = doubts[0].Reason
 		}
 	}
 }

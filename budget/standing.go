@@ -2,6 +2,7 @@ package budget
 
 import (
 	"fmt"
+	"maps"
 	"path"
 	"slices"
 	"strings"
@@ -104,6 +105,24 @@ func (s *standing) headInputs(j *Job) string {
 		return ""
 	}
 	return s.inputs(j, atHead, s.commits.Head)
+}
+
+// alike are the head commit, and those of the known commits that have a job's
+// inputs in common with it.
+func (s *standing) alike() (commits []string) {
+	commits = []string{s.head}
+	if s.commits == nil {
+		return commits
+	}
+	for _, id := range slices.Sorted(maps.Keys(s.commits.Named)) {
+		for _, j := range s.policy.Jobs {
+			if head := s.headInputs(j); id != s.head && head != "" && head == s.inputs(j, id, s.commits.Named[id]) {
+				commits = append(commits, id)
+				break
+			}
+		}
+	}
+	return commits
 }
 
 // boundPart tells whether a booked part stands for the head commit.
