@@ -9,6 +9,7 @@ import (
 	"pgregory.net/rapid"
 
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/grid"
 	"budgetcheck/budget/unit"
 )
 
@@ -52,16 +53,17 @@ func TestSpentByHand(t *testing.T) {
 	s := b.Spent(Window{Repository: "harbour/tide", Account: "main", From: hours(2), To: hours(8)})
 	require.Len(t, s.Lines, 1)
 	l := s.Lines[0]
-	assert.Equal(t, Group{"retrain-tide", "training", "quay-north", "NORTH", "quad"}, l.Group)
+	assert.Equal(t, Group{"retrain-tide", "training", "quay-north", "NORTH", "quad", grid.Average, grid.Direct}, l.Group)
 	assert.Equal(t, 5, l.Runs)
 	assert.Equal(t, []string{"cut", "half", "inside", "refuted"}, l.InDoubt)
 	assert.InDelta(t, 2+2+1+1+1, float64(l.Facility), 1e-12)
 	assert.InDelta(t, 400*(2+1+1), float64(l.Operational), 1e-9) // what has a price
 	assert.InDelta(t, 50*(2+2+1+1+1), float64(l.Embodied), 1e-9)
-	assert.InDelta(t, 3, float64(l.SureKWh), 1e-12)
-	assert.InDelta(t, 450*3, float64(l.SureG), 1e-9)
-	assert.InDelta(t, 1, float64(l.ProvenKWh), 1e-12) // inside alone
-	assert.InDelta(t, 450, float64(l.ProvenG), 1e-9)
+	assert.Equal(t, []string{"half", "refuted"}, l.InDoubtKWh, "a price that is missing leaves energy as certain as it was")
+	assert.InDelta(t, 2+2+1+1, float64(l.SureKWh), 1e-12) // all but the refuted
+	assert.InDelta(t, 450*(2+1), float64(l.SureG), 1e-9)
+	assert.Zero(t, l.ProvenKWh)
+	assert.InDelta(t, 450, float64(l.ProvenG), 1e-9) // inside alone
 	assert.InDelta(t, float64(l.Operational+l.Embodied), float64(l.Total()), 1e-12)
 	all := b.Spent(Window{From: hours(5), To: hours(6)})
 	assert.InDelta(t, 3, float64(all.Lines[0].Facility), 1e-12, "each once, also one of no account")
@@ -74,7 +76,18 @@ func TestSpentAdded(t *testing.T) {
 	b := &Books{Entries: []*Entry{entry("r1")}, Added: map[Window]Spending{w: want}}
 	assert.Equal(t, want, b.Spent(w))
 	w.To++
+	assert.Empty(t, b.Spent(Window{Account: "main", From: w.From, To: w.To, Known: w.To - 2}).Lines, "not booked by then")
 	assert.Equal(t, 1, b.Spent(w).Lines[0].Runs)
 	assert.Empty(t, b.Spent(Window{Account: "main", From: hours(7), To: hours(9)}).Lines)
 	assert.Empty(t, b.Spent(Window{Account: "none", From: hours(0), To: hours(9)}).Lines)
+}
+
+// TestMerge: what several queries read together is there once.
+func TestMerge(t *testing.T) {
+	a := &Books{Entries: []*Entry{entry("r1"), entry("r3", lasting(2, 1))}, Marks: []*Mark{mark("v1", 1)}, Since: hours(0), Notes: []string{"torn"}}
+	b := &Books{Entries: []*Entry{entry("r2", lasting(1, 1)), entry("r3", lasting(2, 1))}, Marks: []*Mark{mark("v0", 0), mark("v1", 1)}, Since: hours(1), Notes: []string{"torn"}}
+	m := Merge(a, b)
+	assert.Equal(t, []string{"r1", "r2", "r3"}, names(m))
+	assert.Equal(t, []string{"v0", "v1"}, tags(m))
+	assert.Equal(t, hours(1), m.Since, "complete for what both are complete for")
 }

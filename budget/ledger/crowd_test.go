@@ -10,6 +10,7 @@ import (
 	"os/exec"
 	"strconv"
 	"strings"
+	"sync"
 	"testing"
 	"time"
 
@@ -128,8 +129,9 @@ func confirmed(out string) (runs []string) {
 func shoot(t *testing.T, cmd *exec.Cmd, most time.Duration) []string {
 	t.Helper()
 	pipe, err := cmd.StdoutPipe()
-	require.NoError(t, err)
-	require.NoError(t, cmd.Start())
+	if !assert.NoError(t, err) || !assert.NoError(t, cmd.Start()) {
+		return nil
+	}
 	told := bufio.NewReader(pipe)
 	first := ""
 	if rand.N(4) > 0 {
@@ -142,6 +144,23 @@ func shoot(t *testing.T, cmd *exec.Cmd, most time.Duration) []string {
 	assert.NoError(t, err)
 	assert.Error(t, cmd.Wait())
 	return confirmed(first + string(rest))
+}
+
+// shootAll kills so many clerks, four of them at work at once.
+func shootAll(t *testing.T, kills int, most time.Duration, clerk func(n int) *exec.Cmd) [][]string {
+	t.Helper()
+	told := make([][]string, kills)
+	const together = 4
+	var wait sync.WaitGroup
+	for first := range together {
+		wait.Go(func() {
+			for n := first; n < kills; n += together {
+				told[n] = shoot(t, clerk(n), most)
+			}
+		})
+	}
+	wait.Wait()
+	return told
 }
 
 // survive checks a ledger whose clerks were killed: it can be read, everything

@@ -23,6 +23,7 @@ type Entry struct {
 	BookedAt   unit.Instant `json:"booked_at"`          // never before the run's end, nor before the entry booked before it
 	Inputs     string       `json:"inputs,omitempty"`   // hash of the files that the job depends on
 	Facts      string       `json:"facts,omitempty"`    // hash of the facts and the series it was priced with
+	Thin       string       `json:"thin,omitempty"`     // why the policy in force took the evidence for thin; empty if it did not
 	Corrects   string       `json:"corrects,omitempty"` // ID of the entry that this one stands in for
 	Why        string       `json:"why,omitempty"`      // of a correction
 

@@ -281,3 +281,17 @@ func TestGitShallowHistory(t *testing.T) {
 	require.Len(t, findings.Lines(), 1)
 	assert.Contains(t, findings.Lines()[0], "the repository is shallow")
 }
+
+// TestGitKeepsNothing: where nothing can be kept, each booking has a repository
+// for itself.
+func TestGitKeepsNothing(t *testing.T) {
+	slow(t)
+	cached(t)
+	s := openGitAt(t, t.TempDir(), newServer(t).url()+"#ledger")
+	occupied := filepath.Join(t.TempDir(), "a file")
+	require.NoError(t, os.WriteFile(occupied, nil, 0o666))
+	s.home = filepath.Join(occupied, "home")
+	assert.Equal(t, []Answer{Booked}, book(t, s, entry("r1")))
+	assert.Equal(t, []Answer{Already, Booked}, book(t, s, entry("r1"), entry("r2", lasting(1, 1))))
+	assert.Equal(t, []string{"r1", "r2"}, names(read(t, s, Query{})))
+}

@@ -2,6 +2,7 @@ package ledger
 
 import (
 	"fmt"
+	"os/exec"
 	"testing"
 	"time"
 )
@@ -45,7 +46,7 @@ func some(t *testing.T, open func(*testing.T) Store) {
 func TestGitCrowd(t *testing.T) {
 	slow(t)
 	const processes, runs, batch = 32, 50, 10
-	const machines = 3
+	const machines = 2
 	var caches []string
 	for range machines {
 		caches = append(caches, t.TempDir())
@@ -62,13 +63,11 @@ func TestGitKilled(t *testing.T) {
 	const kills = 200
 	cached(t)
 	url := "git:" + newServer(t).url() + "#ledger"
-	var told [][]string
-	for n := range kills {
+	survive(t, url, shootAll(t, kills, 200*time.Millisecond, func(n int) *exec.Cmd {
 		cmd := clerkBooking(t, url, fmt.Sprint("clerk", n), 300, 3)
 		if n%2 == 0 {
 			alone(cmd)
 		}
-		told = append(told, shoot(t, cmd, 200*time.Millisecond))
-	}
-	survive(t, url, told)
+		return cmd
+	}))
 }

@@ -63,6 +63,9 @@ func unreadable(file string, no int, err error) finding.Finding {
 // by their start.
 func (g *gathering) wants(text []byte) bool {
 	h, sure := scanHead(text)
+	if sure && g.q.OnlyMarks {
+		return false
+	}
 	if !sure || len(h.corrects) > 0 || g.unclosed[string(h.run)] {
 		return true
 	}

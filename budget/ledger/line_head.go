@@ -31,7 +31,7 @@ func scanHead(text []byte) (h head, sure bool) {
 			h.booked = value
 		case "corrects":
 			h.corrects = value
-		case "inputs", "facts", "why":
+		case "inputs", "facts", "thin", "why":
 		case "run":
 			h.run = value
 			return h, h.booked != nil

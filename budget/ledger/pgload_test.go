@@ -104,7 +104,7 @@ func (l *loader) add(e *Entry) {
 		if l.hours[at] == nil {
 			l.hours[at] = &figures{}
 		}
-		l.hours[at].add(a.figures(!e.doubted()))
+		l.hours[at].add(a.figures(e.doubts()))
 	}
 }
 

@@ -80,7 +80,7 @@ func (v *audit) sums(ctx context.Context, repository string) error {
 			if want[at] == nil {
 				want[at] = &figures{}
 			}
-			want[at].add(a.figures(!e.doubted()))
+			want[at].add(a.figures(e.doubts()))
 		}
 	}
 	rows, _ := v.tx.Query(ctx, "SELECT t.group_id, t.hour, ARRAY[t.facility_kwh::float8, t.operational_g::float8, t.embodied_g::float8,"+

@@ -11,14 +11,15 @@ import (
 // queueDoubts asks for the entries in doubt.
 func (a *addition) queueDoubts(batch *pgx.Batch) {
 	t := a.within()
-	batch.Queue("SELECT g.line, e.run, e.starts >= "+t.arg(int64(a.From))+" AND e.ends <= "+t.arg(int64(a.To))+", e.proven_kwh, e.proven_g"+
-		" FROM ledger_groups g JOIN ledger_entries e ON e.group_id = g.id WHERE e.in_doubt AND "+t.String(), t.args...).
+	batch.Queue("SELECT g.line, e.run, e.starts >= "+t.arg(int64(a.From))+" AND e.ends <= "+t.arg(int64(a.To))+", e.in_doubt, e.proven_kwh, e.proven_g"+
+		" FROM ledger_groups g JOIN ledger_entries e ON e.group_id = g.id WHERE e.in_doubt > 0 AND "+t.String(), t.args...).
 		Query(func(rows pgx.Rows) error {
 			var line, run string
 			var inside bool
+			var bits int64
 			var kwh, g float64
-			_, err := pgx.ForEachRow(rows, []any{&line, &run, &inside, &kwh, &g}, func() error {
-				return a.doubt(line, run, inside, unit.Energy(kwh), unit.Mass(g))
+			_, err := pgx.ForEachRow(rows, []any{&line, &run, &inside, &bits, &kwh, &g}, func() error {
+				return a.doubt(line, run, doubtsOf(bits), inside, unit.Energy(kwh), unit.Mass(g))
 			})
 			return err
 		})
@@ -32,7 +33,7 @@ func (a *addition) within() *terms {
 	return t
 }
 
-func (a *addition) doubt(line, run string, inside bool, kwh unit.Energy, g unit.Mass) error {
+func (a *addition) doubt(line, run string, d doubts, inside bool, kwh unit.Energy, g unit.Mass) error {
 	s, err := a.line(line)
 	if err != nil {
 		return err
@@ -41,7 +42,8 @@ func (a *addition) doubt(line, run string, inside bool, kwh unit.Energy, g unit.
 	if err := json.Unmarshal([]byte(run), &name); err != nil {
 		return err
 	}
-	s.runs[attempt{run: name}] = true
+	k := attempt{run: name}
+	s.runs[k] = s.runs[k].or(d)
 	if inside {
 		s.provenKWh.Add(kwh)
 		s.proveG.Add(g)

@@ -69,10 +69,7 @@ func (a *addition) share(s *sum, body *string) error {
 		s.facility.Add(part.Facility)
 		s.operational.Add(part.Operational)
 		s.embodied.Add(part.Embodied)
-		if !e.doubted() {
-			s.sureKWh.Add(part.Facility)
-			s.sureG.Add(part.Operational + part.Embodied)
-		}
+		s.sure(part, e.doubts())
 	}
 	return nil
 }

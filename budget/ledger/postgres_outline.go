@@ -27,7 +27,7 @@ type entryRow struct {
 	repository             string
 	n                      int64
 	starts, ends           unit.Instant
-	inDoubt                bool
+	inDoubt                int64
 	run                    string
 	provenKWh              unit.Energy
 	provenG                unit.Mass
@@ -104,7 +104,7 @@ func (e kept) row(k Key, incomplete bool) entryRow {
 	kwh, g := e.proven()
 	return entryRow{
 		id: k.id(), attempt: e.attempt().id(), group: e.groupID(), repository: cell(e.Repository), n: e.n,
-		starts: e.Start, ends: e.End, inDoubt: e.doubted() || incomplete, run: encode(e.Run.Run), provenKWh: kwh, provenG: g,
+		starts: e.Start, ends: e.End, inDoubt: e.doubts().or(doubts{incomplete, incomplete}).bits(), run: encode(e.Run.Run), provenKWh: kwh, provenG: g,
 		inputs: cell(e.Inputs), commit: cell(e.Commit), digest: cell(e.Digest),
 	}
 }

@@ -39,7 +39,7 @@ func chained(before id, body string) id { return identify(hex.EncodeToString(bef
 // groupID is of the account and of the line of its spending.
 func (e *Entry) groupID() id {
 	g := e.group()
-	return identify(e.Repository, e.Account, g.Job, g.Stage, g.Site, g.Zone, g.Machine)
+	return identify(e.Repository, e.Account, g.Job, g.Stage, g.Site, g.Zone, g.Machine, string(g.Factor), string(g.Boundary))
 }
 
 // longestCell is less than an index of the database takes of one text.
@@ -85,6 +85,20 @@ func hourOf(t unit.Instant) int64 {
 	return h
 }
 
+// bits tell which figures are in doubt, as the database keeps it: 1 the
+// emissions, 2 the energy.
+func (d doubts) bits() (n int64) {
+	if d.mass {
+		n |= 1
+	}
+	if d.energy {
+		n |= 2
+	}
+	return n
+}
+
+func doubtsOf(bits int64) doubts { return doubts{bits&1 != 0, bits&2 != 0} }
+
 // startOf is when the hour starts.
 func startOf(hour int64) unit.Instant { return unit.Instant(hour * int64(unit.Hour)) }
 
@@ -97,11 +111,14 @@ type amount struct {
 }
 
 // figures are the amount's, in the order of the table: the last two count
-// where nothing speaks against the entry.
-func (a amount) figures(sure bool) [5]float64 {
+// where nothing speaks against the entry's energy, or against its emissions.
+func (a amount) figures(d doubts) [5]float64 {
 	f := [5]float64{float64(a.facility), float64(a.operational), float64(a.embodied)}
-	if sure {
-		f[3], f[4] = float64(a.facility), float64(a.operational+a.embodied)
+	if !d.energy {
+		f[3] = float64(a.facility)
+	}
+	if !d.mass {
+		f[4] = float64(a.operational + a.embodied)
 	}
 	return f
 }
@@ -127,20 +144,4 @@ func (e *Entry) amounts() []amount {
 		}
 	}
 	return list
-}
-
-// doubted tells whether the entry's total is not known, or something speaks
-// against its record.
-func (e *Entry) doubted() bool { return e.Total == nil || len(e.Reasons) > 0 }
-
-// proven is what the entry proves to be spent though it is in doubt.
-func (e *Entry) proven() (unit.Energy, unit.Mass) {
-	if !e.doubted() || e.refuted() {
-		return 0, 0
-	}
-	g := e.ProvenG
-	if e.Embodied != nil {
-		g += *e.Embodied
-	}
-	return e.ProvenKWh, g
 }

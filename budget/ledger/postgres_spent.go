@@ -73,7 +73,7 @@ func newAddition(w Window) *addition {
 func (a *addition) line(text string) (*sum, error) {
 	s := a.lines[text]
 	if s == nil {
-		s = &sum{adding: adding{runs: map[attempt]bool{}}, edges: map[id]*edging{}}
+		s = &sum{adding: adding{runs: map[attempt]doubts{}}, edges: map[id]*edging{}}
 		if err := json.Unmarshal([]byte(text), &s.Group); err != nil {
 			return nil, err
 		}

@@ -158,7 +158,7 @@ type hourColumns struct {
 func (c *hourColumns) entry(e *Entry, sign float64) {
 	group := e.groupID()
 	for _, a := range e.amounts() {
-		c.add(hourRow{group, a.hour}, a.figures(!e.doubted()), sign, 0)
+		c.add(hourRow{group, a.hour}, a.figures(e.doubts()), sign, 0)
 	}
 }
 

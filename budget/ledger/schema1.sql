@@ -36,7 +36,7 @@ CREATE TABLE IF NOT EXISTS ledger_groups (
     id uuid PRIMARY KEY,
     repository text NOT NULL,
     account text NOT NULL,
-    line text NOT NULL -- job, stage, site, zone and machine, JSON
+    line text NOT NULL -- what a line of its spending has in common, JSON
 );
 CREATE INDEX IF NOT EXISTS ledger_groups_account ON ledger_groups (account, repository);
 
@@ -49,9 +49,9 @@ CREATE TABLE IF NOT EXISTS ledger_entries (
     n bigint NOT NULL, -- its line
     starts bigint NOT NULL,
     ends bigint NOT NULL,
-    in_doubt boolean NOT NULL, -- the entry, or its run for want of parts
+    in_doubt bigint NOT NULL, -- the entry, or its run for want of parts: 1 its emissions, 2 its energy
     run text NOT NULL, -- JSON
-    proven_kwh double precision NOT NULL, -- of one in doubt; else 0
+    proven_kwh double precision NOT NULL, -- of what is in doubt; else 0
     proven_g double precision NOT NULL, -- with embodied emissions
     inputs text NOT NULL,
     commit_id text NOT NULL,
@@ -91,7 +91,7 @@ CREATE TABLE IF NOT EXISTS ledger_hours (
     facility_kwh numeric NOT NULL,
     operational_g numeric NOT NULL,
     embodied_g numeric NOT NULL,
-    sure_kwh numeric NOT NULL, -- of entries against which nothing speaks
+    sure_kwh numeric NOT NULL, -- of entries against whose energy, or emissions, nothing speaks
     sure_g numeric NOT NULL,
     begun bigint NOT NULL, -- attempts whose first part started in the hour
     PRIMARY KEY (group_id, hour)

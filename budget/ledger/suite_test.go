@@ -189,6 +189,9 @@ func suiteMarks(t *testing.T, open func(*testing.T) Store) {
 		assert.Equal(t, c.tags, tags(read(t, s, c.q)), "%d", n)
 	}
 	assert.Equal(t, mark("v0", 1), read(t, s, Query{}).Marks[0])
+	only := read(t, s, Query{OnlyMarks: true})
+	assert.Empty(t, only.Entries)
+	assert.Len(t, only.Marks, 4)
 	sound(t, s)
 }
 
@@ -219,6 +222,7 @@ func suiteQuery(t *testing.T, open func(*testing.T) Store) {
 		{Query{Inputs: []string{"i1"}, Commits: []string{"k2"}, Digests: []string{digest}}, []string{"a", "c", "d"}}, // any of them
 		{Query{Inputs: []string{"i1"}, Commits: []string{"k2"}, Since: hours(10)}, []string{"c"}},
 		{Query{Accounts: []string{"nobody"}}, []string{}},
+		{Query{OnlyMarks: true}, []string{}},
 	} {
 		b := read(t, s, c.q)
 		assert.Equal(t, c.runs, names(b), "%+v", c.q)
@@ -253,7 +257,7 @@ func suiteOrder(t *testing.T, open func(*testing.T) Store) {
 	}
 	want := []string{"a", "b", "c", "d", "e"}
 	assert.Equal(t, want, names(read(t, s, Query{})))
-	for since := range 40 { // what ended after it is found, whatever the clocks said
+	for _, since := range []int{0, 3, 4, 9, 10, 30, 31, 39} { // what ended after it is found, whatever the clocks said
 		var expect []string
 		for n, end := range []int{31, 4, 4, 10, 751} {
 			if end > since {
@@ -302,10 +306,13 @@ func suiteOddText(t *testing.T, open func(*testing.T) Store) {
 	assert.Equal(t, slices.Repeat([]Answer{Already}, len(odd)), book(t, s, list...))
 	require.Len(t, read(t, s, Query{}).Entries, len(odd))
 	for n, text := range odd {
-		for _, q := range []Query{{Accounts: []string{text}}, {Inputs: []string{text}}, {Commits: []string{text}}} {
-			b := read(t, s, q)
-			require.Len(t, b.Entries, 1, "%+v", q)
-			alike(t, list[n], b.Entries[0])
+		b := read(t, s, Query{Accounts: []string{text}})
+		require.Len(t, b.Entries, 1, "%q", text)
+		alike(t, list[n], b.Entries[0])
+	}
+	for n := range 3 { // commits are told apart from inputs, and each from the others
+		for _, q := range []Query{{Inputs: odd[3*n : 3*n+3]}, {Commits: odd[3*n : 3*n+3]}} {
+			require.Len(t, read(t, s, q).Entries, 3, "%+v", q)
 		}
 	}
 	sound(t, s)
