@@ -28,6 +28,12 @@ func (p *Policy) Consult(ctx context.Context, store ledger.Store, c *Case, set *
 	return p.Books(read, set), nil
 }
 
+// Notes are what reading the ledger had to say: lines that cannot be read, and
+// what was settled without loss.
+func (b *Books) Notes() []string {
+	return slices.Concat(b.ledger.Findings.Lines(), b.ledger.Notes)
+}
+
 // consulting is the state of reading a ledger.
 type consulting struct {
 	ctx      context.Context

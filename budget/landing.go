@@ -101,7 +101,7 @@ func (j *judgement) land(b *Budget, s span, current unit.Instant) Landing {
 	switch {
 	case s.To > current:
 	case j.c.prospective():
-		spent.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
+		spent = j.booked(b, s)
 	default:
 		spent = j.carried(b, s)
 	}

@@ -118,8 +118,7 @@ func (j *judgement) lands(b *Budget, s span, v *verdictOn) {
 // carried is all that an account spent in the span: what is booked, and the
 // charged parts of head runs that are not.
 func (j *judgement) carried(b *Budget, s span) *tally {
-	var all tally
-	all.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
+	all := j.booked(b, s)
 	for _, r := range j.head {
 		if !b.covers(r.Job, r.Stage) {
 			continue
@@ -138,7 +137,18 @@ func (j *judgement) carried(b *Budget, s span) *tally {
 		}
 		all.examine(b.Limit, r, s)
 	}
-	return &all
+	return all
+}
+
+// booked is what the books tell of a span. Lines of them that cannot be read
+// may be about it.
+func (j *judgement) booked(b *Budget, s span) *tally {
+	var t tally
+	t.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
+	if found := &j.c.Books.ledger.Findings; found.Len() > 0 {
+		t.unread = fmt.Sprintf("%d lines of the ledger cannot be read, first %s", found.Len(), found.First())
+	}
+	return &t
 }
 
 // ruleSum rules on a sum. What is proven to be spent is spent.
@@ -218,15 +228,14 @@ func (j *judgement) runsIn(b *Budget, s span) (runs []*footprint.Run) {
 // charged to it yet: only what others have spent can be told.
 func (j *judgement) beforeMerge(b *Budget) verdictOn {
 	s := j.span(b)
-	var t tally
-	t.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
+	t := j.booked(b, s)
 	r := b.ruling(j.c.Branch)
 	j.settle(&r, b, t.amount(b.Limit, j.declared()))
 	r.Reason = "since " + s.opened + "; this change is charged after merge"
 	if r.State == Over || r.State == Unproven {
 		r.State, r.Reason, r.Conformance = Near, overBefore, nil
 	}
-	return verdictOn{ruling: r, account: j.accountOf(b, s, r, &t, nil), due: true}
+	return verdictOn{ruling: r, account: j.accountOf(b, s, r, t, nil), due: true}
 }
 
 // overBefore is the reason where others have spent what there was.

@@ -79,6 +79,7 @@ type tally struct {
 	terms   footprint.Figures
 	doubted []string // runs
 	reason  string   // of the first doubt that is not only a missing booking
+	unread  string   // what of the books cannot be read
 	runs    int
 }
 
@@ -237,6 +238,8 @@ func (t *tally) doubt() string {
 	names = slices.Compact(names)
 	const most = 5
 	switch n := len(names); {
+	case t.unread != "":
+		return t.unread
 	case n == 0:
 		return ""
 	case t.reason != "" && n == 1:

@@ -51,6 +51,16 @@ func (l *List) Add(f Finding) {
 	l.more++
 }
 
+// Join adds what another list of the same input has beyond this one.
+func (l *List) Join(o *List) {
+	for _, f := range o.kept {
+		if !slices.Contains(l.kept, f) {
+			l.Add(f)
+		}
+	}
+	l.more = max(l.more, o.more)
+}
+
 // Len is how many findings were added.
 func (l *List) Len() int { return len(l.kept) + l.more }
 

@@ -83,3 +83,13 @@ func TestMoreWithoutAFile(t *testing.T) {
 	}
 	assert.Equal(t, "3 more like these", l.Lines()[Kept])
 }
+
+// TestJoin: what several readings of one input found is there once.
+func TestJoin(t *testing.T) {
+	var a, b List
+	a.Add(Finding{File: "books.ndjson", Line: 1, What: "torn"})
+	b.Add(Finding{File: "books.ndjson", Line: 1, What: "torn"})
+	b.Add(Finding{File: "books.ndjson", Line: 2, What: "torn"})
+	a.Join(&b)
+	assert.Equal(t, []string{"books.ndjson:1: torn", "books.ndjson:2: torn"}, a.Lines())
+}

@@ -65,6 +65,12 @@ func Merge(all ...*Books) *Books {
 				merged.Entries = append(merged.Entries, e)
 			}
 		}
+		merged.Findings.Join(&b.Findings)
+		for _, note := range b.Notes {
+			if !slices.Contains(merged.Notes, note) {
+				merged.Notes = append(merged.Notes, note)
+			}
+		}
 		for _, m := range b.Marks {
 			if !marks[*m] {
 				marks[*m] = true

@@ -45,7 +45,7 @@ func some(t *testing.T, open func(*testing.T) Store) {
 // and double nothing.
 func TestGitCrowd(t *testing.T) {
 	slow(t)
-	const processes, runs, batch = 32, 50, 10
+	const processes, runs, batch = 32, 50, 25
 	const machines = 2
 	var caches []string
 	for range machines {

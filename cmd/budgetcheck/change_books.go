@@ -63,6 +63,7 @@ func (c *change) books(ctx context.Context, l *loader, about *budget.Case) error
 		return fmt.Errorf("the ledger cannot be read: %w", err)
 	}
 	about.Books = read
+	l.notes = append(l.notes, read.Notes()...)
 	unplaced := read.Unplaced(about)
 	return nameMore(ctx, c.repo, about.Commits, unplaced[:min(len(unplaced), mostAsked)])
 }

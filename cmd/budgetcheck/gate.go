@@ -117,6 +117,7 @@ func (l *loader) readBooks(ctx context.Context, store ledger.Store, c *budget.Ca
 		return fmt.Errorf("the ledger cannot be read: %w", err)
 	}
 	c.Books = read
+	l.notes = append(l.notes, read.Notes()...)
 	l.nameCommits(ctx, c)
 	return nil
 }
