@@ -24,7 +24,7 @@ type Reader struct {
 	order    order
 	line     Line
 
-	fill     func(*Open) // nil: nothing is filled in
+	fill func(*Open) // nil: nothing is filled in
 
 	findings finding.List
 	unknown  finding.List

@@ -24,7 +24,7 @@ import (
 // elsewhere; it collects what could not be read.
 type loader struct {
 	policy  *budget.Policy
-	noLinks bool // hostile records: a link could lead to any file of the machine
+	noLinks bool               // hostile records: a link could lead to any file of the machine
 	fill    func(*record.Open) // completes open lines; nil: nothing does
 	series  []*grid.File
 	set     *grid.Set
