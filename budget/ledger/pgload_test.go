@@ -39,6 +39,7 @@ var columns = map[string][]string{
 	"ledger_attempts": {"group_id", "attempt_id", "begun", "latest"},
 	"ledger_going":    {"group_id", "hour", "attempt_id"},
 	"ledger_hours":    {"group_id", "hour", "facility_kwh", "operational_g", "embodied_g", "sure_kwh", "sure_g", "begun"},
+	"ledger_days":     {"group_id", "day", "facility_kwh", "operational_g", "embodied_g", "sure_kwh", "sure_g", "begun"},
 	"ledger_heads":    {"repository", "n", "booked_at", "chain"},
 }
 
@@ -64,7 +65,10 @@ func load(t testing.TB, s *postgres, n int, make func(int) *Entry) {
 	}
 	l.row("ledger_heads", repository, l.n, int64(l.booked), l.chain)
 	l.flush(t, s)
-	_, err := s.pool.Exec(ctx, "ANALYZE")
+	_, err := s.pool.Exec(ctx, "INSERT INTO ledger_days SELECT group_id, floor(hour / 24.0)::bigint, sum(facility_kwh), sum(operational_g),"+
+		" sum(embodied_g), sum(sure_kwh), sum(sure_g), sum(begun) FROM ledger_hours GROUP BY 1, 2")
+	require.NoError(t, err)
+	_, err = s.pool.Exec(ctx, "ANALYZE")
 	require.NoError(t, err)
 }
 

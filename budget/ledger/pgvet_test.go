@@ -31,6 +31,8 @@ func TestPostgresVet(t *testing.T) {
 		{"DELETE FROM ledger_going WHERE hour % 2 = 0", "table ledger_going does not follow from the lines"},
 		{"DELETE FROM ledger_hours", "table ledger_hours does not follow from the lines: in the hour from 2031-03-01T00:00:00Z it has 0, the entries 1"},
 		{"UPDATE ledger_hours SET sure_g = sure_g * 1.0001", "table ledger_hours does not follow from the lines: in the hour from"},
+		{"UPDATE ledger_days SET facility_kwh = facility_kwh + 1", "table ledger_days does not follow from the hours: 1 days differ"},
+		{"DELETE FROM ledger_days", "table ledger_days does not follow from the hours: 1 days differ"},
 		{"UPDATE ledger_hours SET begun = begun + 1", "the numbers of runs in table ledger_hours"},
 		{"DELETE FROM ledger_marks", "postgres harbour/tide:4: the release is missing from table ledger_marks"},
 		{"UPDATE ledger_marks SET n = 1", "postgres harbour/tide:1: table ledger_marks has a release that its line does not tell of"},

@@ -131,7 +131,7 @@ func lastAgree(t *rapid.T, s Store, all *Books) {
 // empty takes everything out of a ledger.
 func empty(t test, s *postgres) {
 	t.Helper()
-	for _, table := range []string{"lines", "heads", "marks", "groups", "entries", "attempts", "going", "hours"} {
+	for _, table := range []string{"lines", "heads", "marks", "groups", "entries", "attempts", "going", "hours", "days"} {
 		_, err := s.pool.Exec(ctx, "DELETE FROM ledger_"+table)
 		require.NoError(t, err)
 	}

@@ -30,6 +30,9 @@ func (v *audit) derived(ctx context.Context, repository string) error {
 	if err := v.sums(ctx, repository); err != nil {
 		return err
 	}
+	if err := v.days(ctx, repository); err != nil {
+		return err
+	}
 	return v.kept(ctx, repository)
 }
 
@@ -93,6 +96,22 @@ func (v *audit) sums(ctx context.Context, repository string) error {
 	})(rows)
 	for at, f := range want {
 		v.hour(at.hour, f, nil)
+	}
+	return err
+}
+
+// days compares the sums of days with those of hours. Decimals are exact.
+func (v *audit) days(ctx context.Context, repository string) error {
+	const columns = "sum(t.facility_kwh) AS a, sum(t.operational_g) AS b, sum(t.embodied_g) AS c, sum(t.sure_kwh) AS d, sum(t.sure_g) AS e, sum(t.begun) AS f"
+	const of = " t JOIN ledger_groups g ON g.id = t.group_id WHERE g.repository = $1 GROUP BY 1, 2"
+	var differ int
+	err := v.tx.QueryRow(ctx, "SELECT count(*) FROM (SELECT t.group_id, floor(t.hour / 24.0)::bigint AS day, "+columns+" FROM ledger_hours"+of+") h"+
+		" FULL JOIN (SELECT t.group_id, t.day, "+columns+" FROM ledger_days"+of+") y ON h.group_id = y.group_id AND h.day = y.day"+
+		" WHERE h.a IS DISTINCT FROM y.a OR h.b IS DISTINCT FROM y.b OR h.c IS DISTINCT FROM y.c OR h.d IS DISTINCT FROM y.d"+
+		" OR h.e IS DISTINCT FROM y.e OR h.f IS DISTINCT FROM y.f", repository).Scan(&differ)
+	if err == nil && differ > 0 {
+		v.findings.Add(finding.Finding{File: v.file, Do: restore,
+			What: fmt.Sprintf("table ledger_days does not follow from the hours: %d days differ", differ)})
 	}
 	return err
 }

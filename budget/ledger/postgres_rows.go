@@ -99,6 +99,15 @@ func (d doubts) bits() (n int64) {
 
 func doubtsOf(bits int64) doubts { return doubts{bits&1 != 0, bits&2 != 0} }
 
+// dayOf is the day of UTC that holds the hour, counted from 1970.
+func dayOf(hour int64) int64 {
+	d := hour / 24
+	if hour%24 < 0 {
+		d--
+	}
+	return d
+}
+
 // startOf is when the hour starts.
 func startOf(hour int64) unit.Instant { return unit.Instant(hour * int64(unit.Hour)) }
 

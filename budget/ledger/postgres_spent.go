@@ -92,33 +92,51 @@ func (a *addition) groups() *terms {
 	return t
 }
 
-// queueHours asks for the sums of whole hours.
+// queueHours asks for the sums of whole hours: by days as far as they are whole,
+// and by hours before and after these.
 func (a *addition) queueHours(batch *pgx.Batch) {
+	first, end := dayOf(a.first+23), dayOf(a.end)
+	if first >= end {
+		a.queueSums(batch, "hour", a.first, a.end)
+		return
+	}
+	a.queueSums(batch, "hour", a.first, first*24)
+	a.queueSums(batch, "day", first, end)
+	a.queueSums(batch, "hour", end*24, a.end)
+}
+
+// queueSums asks for the sums of some hours or days.
+func (a *addition) queueSums(batch *pgx.Batch, unit string, first, end int64) {
+	if first >= end {
+		return
+	}
 	t := a.groups()
-	t.add("h.hour >= $", a.first)
-	t.add("h.hour < $", a.end)
+	t.add("h."+unit+" >= $", first)
+	t.add("h."+unit+" < $", end)
 	batch.Queue("SELECT g.line, sum(h.facility_kwh)::float8, sum(h.operational_g)::float8, sum(h.embodied_g)::float8,"+
 		" sum(h.sure_kwh)::float8, sum(h.sure_g)::float8, sum(h.begun)::bigint"+
-		" FROM ledger_groups g JOIN ledger_hours h ON h.group_id = g.id WHERE "+t.String()+" GROUP BY g.line", t.args...).
-		Query(func(rows pgx.Rows) error {
-			var line string
-			var facility, operational, embodied, sureKWh, sureG float64
-			var begun int64
-			_, err := pgx.ForEachRow(rows, []any{&line, &facility, &operational, &embodied, &sureKWh, &sureG, &begun}, func() error {
-				s, err := a.line(line)
-				if err != nil {
-					return err
-				}
-				s.facility.Add(unit.Energy(facility))
-				s.operational.Add(unit.Mass(operational))
-				s.embodied.Add(unit.Mass(embodied))
-				s.sureKWh.Add(unit.Energy(sureKWh))
-				s.sureG.Add(unit.Mass(sureG))
-				s.begun = begun
-				return nil
-			})
+		" FROM ledger_groups g JOIN ledger_"+unit+"s h ON h.group_id = g.id WHERE "+t.String()+" GROUP BY g.line", t.args...).
+		Query(a.takeSums)
+}
+
+func (a *addition) takeSums(rows pgx.Rows) error {
+	var line string
+	var facility, operational, embodied, sureKWh, sureG float64
+	var begun int64
+	_, err := pgx.ForEachRow(rows, []any{&line, &facility, &operational, &embodied, &sureKWh, &sureG, &begun}, func() error {
+		s, err := a.line(line)
+		if err != nil {
 			return err
-		})
+		}
+		s.facility.Add(unit.Energy(facility))
+		s.operational.Add(unit.Mass(operational))
+		s.embodied.Add(unit.Mass(embodied))
+		s.sureKWh.Add(unit.Energy(sureKWh))
+		s.sureG.Add(unit.Mass(sureG))
+		s.begun += begun
+		return nil
+	})
+	return err
 }
 
 // spending closes the lines.

@@ -136,15 +136,31 @@ func (b *booking) writeHours(batch *pgx.Batch, begun map[hourRow]int64) {
 	for h, n := range begun {
 		c.add(h, [5]float64{}, 1, n)
 	}
-	batch.Queue("INSERT INTO ledger_hours (group_id, hour, facility_kwh, operational_g, embodied_g, sure_kwh, sure_g, begun)"+
-		" SELECT group_id, hour, sum(facility::numeric), sum(operational::numeric), sum(embodied::numeric), sum(sure_kwh::numeric), sum(sure_g::numeric),"+
+	c.queue(batch, "hour", c.hour)
+	c.queue(batch, "day", days(c.hour))
+}
+
+// queue adds the terms to the sums by hour, or by day.
+func (c *hourColumns) queue(batch *pgx.Batch, unit string, at []int64) {
+	table := "ledger_" + unit + "s"
+	batch.Queue("INSERT INTO "+table+" (group_id, "+unit+", facility_kwh, operational_g, embodied_g, sure_kwh, sure_g, begun)"+
+		" SELECT group_id, at, sum(facility::numeric), sum(operational::numeric), sum(embodied::numeric), sum(sure_kwh::numeric), sum(sure_g::numeric),"+
 		" sum(begun)::bigint FROM unnest($1::uuid[], $2::bigint[], $3::text[], $4::text[], $5::text[], $6::text[], $7::text[], $8::bigint[])"+
-		" AS d (group_id, hour, facility, operational, embodied, sure_kwh, sure_g, begun) GROUP BY group_id, hour"+
-		" ON CONFLICT (group_id, hour) DO UPDATE SET facility_kwh = ledger_hours.facility_kwh + excluded.facility_kwh,"+
-		" operational_g = ledger_hours.operational_g + excluded.operational_g, embodied_g = ledger_hours.embodied_g + excluded.embodied_g,"+
-		" sure_kwh = ledger_hours.sure_kwh + excluded.sure_kwh, sure_g = ledger_hours.sure_g + excluded.sure_g,"+
-		" begun = ledger_hours.begun + excluded.begun",
-		c.group, c.hour, c.figures[0], c.figures[1], c.figures[2], c.figures[3], c.figures[4], c.begun)
+		" AS d (group_id, at, facility, operational, embodied, sure_kwh, sure_g, begun) GROUP BY group_id, at"+
+		" ON CONFLICT (group_id, "+unit+") DO UPDATE SET facility_kwh = "+table+".facility_kwh + excluded.facility_kwh,"+
+		" operational_g = "+table+".operational_g + excluded.operational_g, embodied_g = "+table+".embodied_g + excluded.embodied_g,"+
+		" sure_kwh = "+table+".sure_kwh + excluded.sure_kwh, sure_g = "+table+".sure_g + excluded.sure_g,"+
+		" begun = "+table+".begun + excluded.begun",
+		c.group, at, c.figures[0], c.figures[1], c.figures[2], c.figures[3], c.figures[4], c.begun)
+}
+
+// days are those that hold the hours.
+func days(hours []int64) []int64 {
+	list := make([]int64, len(hours))
+	for n, h := range hours {
+		list[n] = dayOf(h)
+	}
+	return list
 }
 
 // hourColumns are terms of the sums of hours.

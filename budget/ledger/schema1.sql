@@ -96,3 +96,17 @@ CREATE TABLE IF NOT EXISTS ledger_hours (
     begun bigint NOT NULL, -- attempts whose first part started in the hour
     PRIMARY KEY (group_id, hour)
 );
+
+-- The same by days of UTC, whole ones: a month is then some thirty rows and not
+-- some seven hundred.
+CREATE TABLE IF NOT EXISTS ledger_days (
+    group_id uuid NOT NULL,
+    day bigint NOT NULL,
+    facility_kwh numeric NOT NULL,
+    operational_g numeric NOT NULL,
+    embodied_g numeric NOT NULL,
+    sure_kwh numeric NOT NULL,
+    sure_g numeric NOT NULL,
+    begun bigint NOT NULL,
+    PRIMARY KEY (group_id, day)
+);
