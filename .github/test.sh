@@ -62,10 +62,11 @@ formatted
 go mod verify
 go vet "${packages[@]}"
 go tool staticcheck "${packages[@]}"
-# The ledger's crowds and kills are processes, of which the race detector sees
-# nothing: it looks at the rest, and they run at full size without it.
-mapfile -t others < <(go list "${packages[@]}" | grep -v '/budget/ledger$')
+# Crowds, kills and simulations, of which the race detector sees nothing, run at
+# full size without it; it looks at the rest of these packages.
+large=(./budget/compare ./budget/forecast ./budget/ledger)
+mapfile -t others < <(go list "${packages[@]}" | grep -vE '/budget/(compare|forecast|ledger)$')
 go test -race -timeout 30m "${others[@]}" # it builds the action and runs it
-go test -race -short -timeout 10m ./budget/ledger
-go test -timeout 20m ./budget/ledger
+go test -race -short -timeout 10m "${large[@]}"
+go test -timeout 20m "${large[@]}"
 fuzz "${1:-3}"

@@ -27,10 +27,11 @@ func (p *Policy) Blunt(runs []*footprint.Run) (warnings []finding.Finding) {
 			if g.Confidence != nil {
 				rule.Confidence = *g.Confidence
 			}
+			sure, _ := rule.Detectable(noise)
 			if least, ok := rule.Resolution(noise); ok && float64(g.MaxRise) < least {
 				warnings = append(warnings, finding.Finding{File: g.File, Line: g.Line,
-					What: fmt.Sprintf("rule %q allows a rise of %s, and the energy of job %s scatters by %s from run to run: an unchanged run is within it for certain only from %s on",
-						g.Name, g.MaxRise, first.Job, noise, unit.Share(least)),
+					What: fmt.Sprintf("rule %q allows a rise of %s, and the energy of job %s scatters by %s from run to run: an unchanged run is within it for certain only from %s on, and a rise is found for certain from %s on",
+						g.Name, g.MaxRise, first.Job, noise, unit.Share(least), unit.Share(sure)),
 					Do: fmt.Sprintf("set max_rise to %s or more, raise base_runs above %d, or steady the job", unit.Share(least), rule.BaseRuns)})
 			}
 		}

@@ -53,16 +53,20 @@ func (p *Policy) Entry(part *footprint.Part, b Booking) (*ledger.Entry, error) {
 	if job != nil && job.Work != nil {
 		part.Pilot = part.Pilot || part.Unfinished(job.Work.Amount)
 	}
-	var thin string
-	if run := footprint.Combine([]*footprint.Part{part}, p.Method()); len(p.thin(run)) > 0 {
-		thin = p.thin(run)[0].Reason
-	}
 	e := &ledger.Entry{Kind: ledger.KindRun, Repository: b.Repository, Account: account, BookedAt: max(b.Now, part.End),
-		Facts: part.FactsHash(p.Method()), Thin: thin, Booked: part.Book(p.Method())}
+		Facts: part.FactsHash(p.Method()), Thin: p.thinPart(part), Booked: part.Book(p.Method())}
 	if t, ok := b.Commits[part.Open.Commit]; ok && job != nil {
 		e.Inputs = newStanding(p, &Case{}).inputs(job, part.Open.Commit, t)
 	}
 	return e, nil
+}
+
+// thinPart is why a part by itself is too thin; "" if it is not.
+func (p *Policy) thinPart(part *footprint.Part) string {
+	if doubts := p.thin(footprint.Combine([]*footprint.Part{part}, p.Method())); len(doubts) > 0 {
+		return doubts[0].Reason
+	}
+	return ""
 }
 
 // Settle makes the corrections for entries that had no final price: their

@@ -57,7 +57,7 @@ func (j *judgement) headTally(b *Budget, s span) *tally {
 	var t tally
 	for _, r := range j.head {
 		if b.covers(r.Job, r.Stage) {
-			t.run(r, j.policy.Method(), s, func(p *footprint.Part) bool {
+			t.run(r, j.policy, s, func(p *footprint.Part) bool {
 				account, _ := j.entered(p)
 				return account == s.account || account == "" && j.charged(b)
 			})
@@ -133,7 +133,7 @@ func (j *judgement) carried(b *Budget, s span) *tally {
 		}
 		all.settled(r)
 		if j.charged(b) {
-			all.run(r, j.policy.Method(), s, func(p *footprint.Part) bool { _, booked := j.entered(p); return !booked })
+			all.run(r, j.policy, s, func(p *footprint.Part) bool { _, booked := j.entered(p); return !booked })
 		}
 		all.examine(b.Limit, r, s)
 	}

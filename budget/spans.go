@@ -133,7 +133,8 @@ func (t *tally) addTerms(line ledger.Spent) {
 
 // run adds those parts of a run that wanted names, as much of them as lies
 // within the span.
-func (t *tally) run(r *footprint.Run, m footprint.Method, s span, wanted func(*footprint.Part) bool) {
+func (t *tally) run(r *footprint.Run, policy *Policy, s span, wanted func(*footprint.Part) bool) {
+	m := policy.Method()
 	var inside unit.Sum[unit.Energy]
 	touched := false
 	for _, p := range r.Pieces {
@@ -147,7 +148,12 @@ func (t *tally) run(r *footprint.Run, m footprint.Method, s span, wanted func(*f
 		t.mass.Add(mass)
 		t.energy.Add(in.Facility)
 		inside.Add(in.Facility)
-		t.certain(r, &b, in, b.Start >= s.From && b.End <= s.To)
+		if !refutedBeside(r, p) {
+			e := ledger.Entry{Thin: policy.thinPart(p), Booked: b}
+			kwh, g := e.Certain(s.From, s.To)
+			t.sure.energy.Add(kwh)
+			t.sure.mass.Add(g)
+		}
 	}
 	if !touched {
 		return
@@ -161,21 +167,12 @@ func (t *tally) run(r *footprint.Run, m footprint.Method, s span, wanted func(*f
 	t.terms.Energy = t.terms.Energy.Plus(share, r.Terms.Energy)
 }
 
-// certain adds what of a part is not in doubt, or proven all the same.
-func (t *tally) certain(r *footprint.Run, b *footprint.Booked, in footprint.Slice, whole bool) {
-	proven := whole && !r.Refuted()
-	switch {
-	case r.Known():
-		t.sure.mass.Add(in.Operational + in.Embodied)
-	case proven:
-		t.sure.mass.Add(b.ProvenG + in.Embodied)
-	}
-	switch {
-	case r.Facility != nil && !slices.ContainsFunc(r.Doubts, func(d footprint.Doubt) bool { return !d.Price }):
-		t.sure.energy.Add(in.Facility)
-	case proven:
-		t.sure.energy.Add(b.ProvenKWh)
-	}
+// refutedBeside tells whether the energy of the run is in question for a reason
+// that is not about another part of it.
+func refutedBeside(r *footprint.Run, p *footprint.Part) bool {
+	return slices.ContainsFunc(r.Doubts, func(d footprint.Doubt) bool {
+		return d.Refutes && !slices.ContainsFunc(r.Pieces, func(o *footprint.Part) bool { return o != p && slices.Contains(o.Doubts, d) })
+	})
 }
 
 // settled drops the doubt that the books have of a run, for it is examined with

@@ -60,20 +60,6 @@ func TestActualGridFollowsTheWeather(t *testing.T) {
 	})
 }
 
-// The means are those that Hold tells, unless the base drifts.
-func TestAgreesWithHold(t *testing.T) {
-	rapid.Check(t, func(t *rapid.T) {
-		base, head := samples().Draw(t, "base"), samples().Draw(t, "head")
-		r, h := compare.Compare(base, head, asked(t)), held(t, base, head)
-		if !r.Drift {
-			same(t, float64(h.Base), *r.BaseHeld)
-		}
-		same(t, float64(h.Head), *r.HeadHeld)
-		want := *r.HeadHeld / *r.BaseHeld
-		assert.InDelta(t, want-1, *r.Ratio, 1e-9*(1+want))
-	})
-}
-
 // State and figures say the same.
 func TestStateFollowsTheFigures(t *testing.T) {
 	rapid.Check(t, func(t *rapid.T) {

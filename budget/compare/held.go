@@ -8,8 +8,6 @@ package compare
 import (
 	"math"
 
-	"gonum.org/v1/gonum/stat"
-
 	"budgetcheck/budget/unit"
 )
 
@@ -21,22 +19,6 @@ type Sample struct {
 	Embodied    unit.Mass // zero where none is declared
 	Work        unit.Work // needed for a rate only
 	Variance    float64   // relative variance of a projected pilot's energy; zero for a whole run
-}
-
-// Held are the figures of two sides with the grid held: geometric means.
-type Held struct {
-	Base, Head unit.Mass
-	Ratio      float64 // Head/Base - 1
-}
-
-// Hold restates the runs of both sides as machine energy times the base's mean
-// PUE and intensity, plus embodied emissions. ok is false where a side has no
-// run, or one without energy or emissions, of which no ratio can be told.
-func Hold(base, head []Sample) (h Held, ok bool) {
-	i := baseIntensity(base)
-	h.Base, h.Head = heldMean(base, i), heldMean(head, i)
-	h.Ratio = float64(h.Head)/float64(h.Base) - 1
-	return h, h.Base > 0 && h.Head > 0 && !math.IsInf(h.Ratio, 0)
 }
 
 // baseIntensity is what machine energy is restated with: the runs' mean
@@ -53,18 +35,3 @@ func baseIntensity(base []Sample) unit.Intensity {
 
 // positive tells whether v is above zero and finite.
 func positive(v float64) bool { return v > 0 && v <= math.MaxFloat64 }
-
-// heldMean is the geometric mean of the runs' held totals; 0 where one has none.
-func heldMean(runs []Sample, i unit.Intensity) unit.Mass {
-	held := make([]float64, len(runs))
-	for n, s := range runs {
-		held[n] = float64(i.Of(s.Machine) + s.Embodied)
-		if !positive(float64(s.Machine)) || !positive(held[n]) {
-			return 0
-		}
-	}
-	if len(held) == 0 {
-		return 0
-	}
-	return unit.Mass(stat.GeometricMean(held, nil))
-}

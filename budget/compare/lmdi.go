@@ -5,22 +5,14 @@ import (
 	"slices"
 )
 
-// LMDI splits the change of a sum of products by factor, without remainder.
-// Rows are sub-categories, columns their factors; base and head have the same
-// shape. Factors are finite and not negative. terms[i][k] is what factor k of
-// row i adds to the sum, in the unit of the products; all terms together are
-// the change of the sum, to rounding, and swapping the sides flips their signs.
+// lmdiRow splits the change of a product by factor, without remainder: what
+// factor k adds is term k, in the unit of the product; all terms together are
+// the change, to rounding, and swapping the sides flips their signs. Factors are
+// finite and not negative.
 //
 // It is the additive LMDI-I (Ang 2005, Energy Policy 33:867): L ln(head/base),
-// with L the logarithmic mean of the row's two products. Zeros count with
-// their analytical limits (Ang, Zhang & Choi 1998, Energy 23:489).
-func LMDI(base, head [][]float64) (terms [][]float64) {
-	for n := range base {
-		terms = append(terms, lmdiRow(base[n], head[n]))
-	}
-	return terms
-}
-
+// with L the logarithmic mean of the two products. Zeros count with their
+// analytical limits (Ang, Zhang & Choi 1998, Energy 23:489).
 func lmdiRow(base, head []float64) []float64 {
 	terms := make([]float64, len(base))
 	from, to := lmdiProduct(base), lmdiProduct(head)

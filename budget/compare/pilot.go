@@ -35,9 +35,6 @@ const (
 	pilotLeastShare = unit.Share(0.05) // of the planned work
 )
 
-// Variance is the relative variance of Energy, which must be above zero.
-func (p Projection) Variance() float64 { return math.Pow(float64(p.StdErr/p.Energy), 2) }
-
 // Project adds to what was measured the work that is left, at the energy that
 // a unit of it took between the first and the last work line: the start-up has
 // been spent and is not spent again. doubt tells why nothing can be projected;

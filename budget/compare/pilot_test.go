@@ -45,7 +45,7 @@ func TestPilot(t *testing.T) {
 	assert.InEpsilon(t, 405, float64(out.Energy), 1e-12)
 	assert.InDelta(t, 36.26, float64(out.HalfWidth), 0.005)
 	assert.InEpsilon(t, float64(out.HalfWidth)/2.364624, float64(out.StdErr), 1e-6, "t(0.975, 7) from the tables")
-	assert.InEpsilon(t, math.Pow(36.26/2.364624/405, 2), out.Variance(), 1e-3)
+	assert.InEpsilon(t, math.Pow(36.26/2.364624/405, 2), math.Pow(float64(out.StdErr/out.Energy), 2), 1e-3)
 }
 
 // TestPilotCorrelation: r = r1 + (1 + 4 max(r1, 0))/8, held in 0..0.8, for

@@ -47,7 +47,11 @@ func (b *Booked) restoreEnergy(p *Part) {
 	}
 	p.metered = *b.Measured
 	p.filled.Add(b.FilledKWh)
-	p.measured.Add(p.metered - b.FilledKWh)
+	measured := p.metered - b.FilledKWh
+	if c := b.Coverage; c != nil { // a difference would lose the digits of what is small beside what is filled
+		measured = p.metered * unit.Energy(*c)
+	}
+	p.measured.Add(measured)
 }
 
 // restate brings energy and emissions to the facts in force.

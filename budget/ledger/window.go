@@ -158,10 +158,27 @@ func (a *adding) sure(s footprint.Slice, d doubts) {
 	}
 }
 
-// proven is what the entry proves to be spent of what is in doubt.
+// Certain is what the entry is known to have spent within a span: what is not in
+// doubt, and what of the rest is proven.
+func (e *Entry) Certain(from, to unit.Instant) (kwh unit.Energy, g unit.Mass) {
+	in, d := e.Within(from, to), e.doubts()
+	if e.Start >= from && e.End <= to {
+		kwh, g = e.proven()
+	}
+	if !d.energy {
+		kwh += in.Facility
+	}
+	if !d.mass {
+		g += in.Operational + in.Embodied
+	}
+	return kwh, g
+}
+
+// proven is what the entry proves to be spent of what is in doubt. Without the
+// facts of its place that is nothing.
 func (e *Entry) proven() (kwh unit.Energy, g unit.Mass) {
 	d := e.doubts()
-	if e.refuted() {
+	if e.refuted() || e.Facility == nil {
 		return 0, 0
 	}
 	if d.energy {

@@ -54,6 +54,9 @@ func (c *change) books(ctx context.Context, l *loader, about *budget.Case) error
 			return err
 		}
 	}
+	if l.policy.NeedsTags(c.subject.Branch) {
+		about.Tags = l.tags(ctx, c.subject.Branch)
+	}
 	read, err := l.policy.Consult(ctx, c.store, about, l.set)
 	if err != nil && c.in.ledger == "" && !c.in.book {
 		l.notes = append(l.notes, c.noBooks(err)...)
