@@ -133,10 +133,8 @@ func (b *booking) entries(ctx context.Context, parts []*footprint.Part) ([]*ledg
 	if err != nil {
 		return nil, err
 	}
-	how := budget.Booking{Repository: b.from.repository(), Branch: b.o.branch, Pull: pull, Now: b.now, Commits: b.trees(ctx, parts)}
-	if how.Branch == "" && !ofRecords(parts) {
-		how.Branch = b.from.branch()
-	}
+	// What flags and CI host tell comes before what a record says of itself.
+	how := budget.Booking{Repository: b.from.repository(), Branch: b.from.branch(), Pull: pull, Now: b.now, Commits: b.trees(ctx, parts)}
 	var entries []*ledger.Entry
 	for _, p := range parts {
 		e, err := b.l.policy.Entry(p, how)
@@ -148,11 +146,6 @@ func (b *booking) entries(ctx context.Context, parts []*footprint.Part) ([]*ledg
 		entries = append(entries, e)
 	}
 	return entries, nil
-}
-
-// ofRecords tells whether every record tells its own account.
-func ofRecords(parts []*footprint.Part) bool {
-	return !slices.ContainsFunc(parts, func(p *footprint.Part) bool { return p.Open.Branch == "" && p.Open.Pull == 0 })
 }
 
 // trees are the commits that the parts ran on, as far as a clone is at hand.
