@@ -146,6 +146,9 @@ func TestOrderAndRepetition(t *testing.T) {
 		base, head := samples().Draw(t, "base"), samples().Draw(t, "head")
 		was := held(t, base, head)
 		is := held(t, rapid.Permutation(base).Draw(t, "base again"), slices.Concat(head, head))
+		if was.Drift || is.Drift {
+			return // then the order tells where the base stands by now
+		}
 		same(t, float64(was.Base), float64(is.Base))
 		same(t, float64(was.Head), float64(is.Head))
 	})
@@ -155,11 +158,13 @@ func TestOrderAndRepetition(t *testing.T) {
 type heldFigures struct {
 	Base, Head unit.Mass
 	Ratio      float64
+	Drift      bool
 }
 
 // hold is what a comparison says of them, however few the runs are.
 func hold(base, head []compare.Sample) (h heldFigures, ok bool) {
 	r := compare.Compare(base, head, compare.Question{Confidence: 0.95})
+	h.Drift = r.Drift
 	if r.BaseHeld != nil {
 		h.Base = unit.Mass(*r.BaseHeld)
 	}
