@@ -87,11 +87,15 @@ func (t *tip) push(ctx context.Context, commit string) error {
 	_, err := r.run(ctx, nil, "push", "--quiet", "--porcelain", "--no-verify", "--no-follow-tags", "--no-signed", "--recurse-submodules=no",
 		ours, commit+":refs/heads/"+r.store.branch)
 	var said *complaint
-	if errors.As(err, &said) && tooLate(said.out+said.text) {
+	if errors.As(err, &said) && (tooLate(said.out+said.text) || unseen(said.text)) {
 		return errLate
 	}
 	return err
 }
+
+// unseen tells that git met a commit that the server has and we do not, and may
+// not fetch: somebody pushed since we looked.
+func unseen(said string) bool { return strings.Contains(said, "from promisor remote") }
 
 // move moves the clone's own branch, if it still is where it was.
 func (t *tip) move(ctx context.Context, commit string) error {
