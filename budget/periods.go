@@ -146,7 +146,7 @@ func (j *judgement) booked(b *Budget, s span) *tally {
 	var t tally
 	t.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
 	if found := &j.c.Books.ledger.Findings; found.Len() > 0 {
-		t.unread = fmt.Sprintf("%d lines of the ledger cannot be read, first %s", found.Len(), found.First())
+		t.unread = fmt.Sprintf("the ledger has lines that cannot be read (%d), first %s", found.Len(), found.First())
 	}
 	return &t
 }
