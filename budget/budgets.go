@@ -49,44 +49,63 @@ func (b *Budget) covers(job, stage string) bool {
 	return matches(b.Job, job) && matches(b.Stage, stage)
 }
 
-// perRun judges every run by itself; the worst is shown. ok is false where no
+// perRun judges every run by itself; the worst is shown. due is false where no
 // run matches and none has to: then there is nothing to rule on.
-func (j *judgement) perRun(b *Budget) (worst Ruling, ok bool) {
-	take := func(r Ruling) {
-		missing := worst.Missing || worst.State != Unproven // what is shown hides nothing but missing records
-		if !ok || r.worse(worst) {
-			worst, ok = r, true
-		}
-		worst.Missing = worst.Missing && missing && (r.Missing || r.State != Unproven)
-	}
+func (j *judgement) perRun(b *Budget) (r Ruling, due bool) {
+	var w worst
 	runs := 0
 	for _, run := range j.head {
 		if b.covers(run.Job, run.Stage) {
 			runs++
-			take(j.judgeRun(b, run))
+			w.take(j.judgeRun(b, run))
 		}
 	}
+	j.owed(&w, b.Job, b.Stage, b.ruling(j.c.Branch))
+	return w.of(runs, "runs")
+}
+
+// worst is the worst of a rule's rulings: that is the one that is shown.
+type worst struct {
+	Ruling
+	due bool // there is one
+}
+
+// take takes the next. What is shown hides nothing but missing records.
+func (w *worst) take(r Ruling) {
+	missing := w.Missing || w.State != Unproven
+	if !w.due || r.worse(w.Ruling) {
+		w.Ruling, w.due = r, true
+	}
+	w.Missing = w.Missing && missing && (r.Missing || r.State != Unproven)
+}
+
+// of says among how many the worst was found.
+func (w *worst) of(n int, what string) (Ruling, bool) {
+	if n > 1 && w.Observed != nil {
+		w.Reason = joinReason(fmt.Sprintf("worst of %d %s", n, what), w.Reason)
+	}
+	return w.Ruling, w.due
+}
+
+// owed rules on the jobs that a rule is about and that need no run, or owe one.
+// A job without a stage may run at any. empty is a ruling of the rule.
+func (j *judgement) owed(w *worst, jobs, stages string, empty Ruling) {
 	for _, job := range j.policy.Jobs {
-		// A job without a stage may run at any that the budget is about.
-		if !matches(b.Job, job.Name) || job.Stage != "" && !matches(b.Stage, job.Stage) {
+		if !matches(jobs, job.Name) || job.Stage != "" && !matches(stages, job.Stage) {
 			continue
 		}
-		r := b.ruling(j.c.Branch)
+		r := empty
 		r.Job = job.Name
 		switch {
 		case j.standing.unchanged(job):
 			r.State, r.Reason = Within, unchanged
-			take(r)
+			w.take(r)
 		case j.asked(job) && !j.satisfied(job):
 			r.State = Unproven
 			r.Reason, r.Missing = j.missing(job)
-			take(r)
+			w.take(r)
 		}
 	}
-	if runs > 1 && worst.Observed != nil {
-		worst.Reason = joinReason(fmt.Sprintf("worst of %d runs", runs), worst.Reason)
-	}
-	return worst, ok
 }
 
 func joinReason(a, b string) string {

@@ -76,7 +76,7 @@ func (j *judgement) land(b *Budget, s span, current unit.Instant) Landing {
 	jobs, notes := j.landingJobs(b, s)
 	with := jobs
 	if j.c.prospective() {
-		with = j.merged(b, s, jobs)
+		with = j.merged(b, jobs)
 		before := j.landed(b, s, spent, jobs)
 		l.before = &before
 	}

@@ -128,7 +128,7 @@ func evidenceOf(r *footprint.Run) (one forecast.Run, ok bool) {
 
 // merged is how the jobs go on if the change merges: each run takes as much
 // more as the comparison shows. A job without a past goes by the head runs.
-func (j *judgement) merged(b *Budget, s span, jobs []forecast.Job) []forecast.Job {
+func (j *judgement) merged(b *Budget, jobs []forecast.Job) []forecast.Job {
 	with := slices.Clone(jobs)
 	for n := range with {
 		job := &with[n]

@@ -58,9 +58,7 @@ func (j *judgement) landingAccount(b *Budget, s span, r Ruling, l *Landing) *Acc
 	if b.Limit.Mass == nil {
 		return nil
 	}
-	var all tally
-	all.booked(b, j.c.Books.ledger.Spent(j.window(s)), j.policy.Method())
-	spent := all.mass.Value()
+	spent := j.booked(b, s).mass.Value()
 	return &AccountLine{Name: b.Name, Per: b.Per, Period: s.Name, Brought: &spent, Limit: *b.Limit.Mass, State: r.State, Landing: l, Page: l.page()}
 }
 

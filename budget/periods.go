@@ -4,6 +4,7 @@ import (
 	"fmt"
 
 	"budgetcheck/budget/footprint"
+	"budgetcheck/budget/record"
 	"budgetcheck/budget/unit"
 )
 
@@ -176,7 +177,7 @@ const byLess = "above the limit, but by less than its expanded uncertainty"
 // their emissions by the sum of their work.
 func (j *judgement) rateOver(b *Budget, s span) verdictOn {
 	r := b.ruling(j.c.Branch)
-	sum := &footprint.Run{Work: nil}
+	sum := &footprint.Run{}
 	var mass unit.Sum[unit.Mass]
 	for _, run := range j.runsIn(b, s) {
 		if reason := b.Limit.unfit(run); reason != "" || !run.Known() {
@@ -185,9 +186,7 @@ func (j *judgement) rateOver(b *Budget, s span) verdictOn {
 		}
 		mass.Add(*run.Total)
 		if sum.Work == nil {
-			w := *run.Work
-			sum.Work, w.Done = &w, 0
-			sum.Work = &w
+			sum.Work = &record.Work{Unit: run.Work.Unit}
 		}
 		sum.Work.Done += run.Work.Done
 		sum.Terms.Mass = sum.Terms.Mass.Plus(1, run.Terms.Mass)

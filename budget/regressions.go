@@ -38,36 +38,14 @@ func (g *Regression) covers(job, stage string) bool {
 
 // regression judges each job and stage; the worst is shown. They share the
 // error of the rule. due is false where nothing is asked.
-func (j *judgement) regression(g *Regression) (worst Ruling, due bool) {
-	take := func(r Ruling) {
-		if !due || r.worse(worst) {
-			worst, due = r, true
-		}
-	}
+func (j *judgement) regression(g *Regression) (r Ruling, due bool) {
+	var w worst
 	pairs := j.pairs(g)
 	for _, p := range pairs {
-		take(j.judgePair(g, p, len(pairs)))
+		w.take(j.judgePair(g, p, len(pairs)))
 	}
-	for _, job := range j.policy.Jobs {
-		if !matches(g.Job, job.Name) || job.Stage != "" && !matches(g.Stage, job.Stage) {
-			continue
-		}
-		r := g.ruling(j.c.Branch)
-		r.Job = job.Name
-		switch {
-		case j.standing.unchanged(job):
-			r.State, r.Reason = Within, unchanged
-			take(r)
-		case j.asked(job) && !j.satisfied(job):
-			r.State = Unproven
-			r.Reason, r.Missing = j.missing(job)
-			take(r)
-		}
-	}
-	if len(pairs) > 1 && worst.Observed != nil {
-		worst.Reason = joinReason(fmt.Sprintf("worst of %d jobs", len(pairs)), worst.Reason)
-	}
-	return worst, due
+	j.owed(&w, g.Job, g.Stage, g.ruling(j.c.Branch))
+	return w.of(len(pairs), "jobs")
 }
 
 // judgePair compares one job and stage.
