@@ -45,14 +45,7 @@ func (t *timeline) grow() {
 	t.buckets = append(t.buckets, bucket{from: from, to: to, price: price})
 }
 
-func nextHour(t unit.Instant) unit.Instant {
-	const hour = unit.Instant(unit.Hour)
-	into := t % hour
-	if into < 0 { // before 1970
-		into += hour
-	}
-	return t - into + hour
-}
+func nextHour(t unit.Instant) unit.Instant { return unit.HourStart(t.Hour() + 1) }
 
 // overlap is how much of the bucket lies between from and to.
 func (b *bucket) overlap(from, to unit.Instant) unit.Duration {

@@ -37,7 +37,7 @@ func hoursOf(at unit.Instant, length unit.Duration) []int64 {
 	part := length / parts
 	hours := make([]int64, parts)
 	for n := range hours {
-		hours[n] = hourOf(at.Add(part*unit.Duration(n) + part/2))
+		hours[n] = (at.Add(part*unit.Duration(n) + part/2)).Hour()
 	}
 	return hours
 }

@@ -35,7 +35,7 @@ type cell struct {
 
 // asOf keeps what lies before now. s may be nil.
 func asOf(s *grid.Series, now unit.Instant) *hourly {
-	h := &hourly{first: hourOf(now), end: hourOf(now)}
+	h := &hourly{first: now.Hour(), end: now.Hour()}
 	if s == nil {
 		return h
 	}
@@ -43,30 +43,20 @@ func asOf(s *grid.Series, now unit.Instant) *hourly {
 	if end = min(end, now); start >= end {
 		return h
 	}
-	h.first, h.end = hourOf(max(start, end.Add(-memory))), hourOf(end-1)+1
+	h.first, h.end = (max(start, end.Add(-memory))).Hour(), (end-1).Hour()+1
 	h.fill(s.Steps(), end)
 	h.total()
 	return h
 }
 
-func hourOf(t unit.Instant) int64 {
-	hour := int64(t) / int64(unit.Hour)
-	if int64(t)%int64(unit.Hour) < 0 {
-		hour--
-	}
-	return hour
-}
-
-func startOf(hour int64) unit.Instant { return unit.Instant(hour * int64(unit.Hour)) }
-
 // fill takes the time mean of the steps in each hour.
 func (h *hourly) fill(steps []grid.Interval, end unit.Instant) {
 	h.cells = make([]cell, h.end-h.first)
 	for _, s := range steps {
-		s.From, s.To = max(s.From, startOf(h.first)), min(s.To, end)
+		s.From, s.To = max(s.From, unit.HourStart(h.first)), min(s.To, end)
 		for s.From < s.To {
-			hour := hourOf(s.From)
-			until := min(s.To, startOf(hour+1))
+			hour := s.From.Hour()
+			until := min(s.To, unit.HourStart(hour+1))
 			part := float64(until-s.From) / float64(unit.Hour)
 			c := &h.cells[hour-h.first]
 			c.value += part * float64(s.I)

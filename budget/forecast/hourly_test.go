@@ -37,7 +37,7 @@ func TestExpectedAgreesWithTheSeries(t *testing.T) {
 		_, end := s.Span()
 		h := asOf(s, end)
 		hour := h.end + rapid.Int64Range(0, 23).Draw(t, "ahead")
-		want, _, ok := s.Expected(startOf(hour))
+		want, _, ok := s.Expected(unit.HourStart(hour))
 		got, told := h.expected(hour, h.end)
 		if ok {
 			require.True(t, told)
@@ -87,7 +87,7 @@ func TestExpectedReadPlainly(t *testing.T) {
 		h := asOf(s, end)
 		origin := h.end - rapid.Int64Range(0, 24*20).Draw(t, "back")
 		hour := origin + rapid.Int64Range(-24, 24*40).Draw(t, "ahead")
-		want, ok := expectedPlainly(s, startOf(hour), startOf(origin))
+		want, ok := expectedPlainly(s, unit.HourStart(hour), unit.HourStart(origin))
 		got, told := h.expected(hour, origin)
 		require.Equal(t, ok, told)
 		if ok {
@@ -110,13 +110,13 @@ func TestBacktestReadPlainly(t *testing.T) {
 		}
 		var squares, days float64
 		for back := unit.Duration(1); back < 60; back++ {
-			origin := startOf(h.end).Add(-back * unit.Day)
-			if startOf(hour-1).Add(-back*unit.Day) >= startOf(h.end) {
+			origin := unit.HourStart(h.end).Add(-back * unit.Day)
+			if unit.HourStart(hour-1).Add(-back*unit.Day) >= unit.HourStart(h.end) {
 				continue // not over yet
 			}
 			var foretold, came, told, all float64
 			for _, s2 := range slots {
-				at := startOf(s2.hour).Add(-back * unit.Day)
+				at := unit.HourStart(s2.hour).Add(-back * unit.Day)
 				i, ok := expectedPlainly(s, at, origin)
 				v, known := s.At(at)
 				all += s2.weight
@@ -176,21 +176,21 @@ func TestHoursOfOddSteps(t *testing.T) {
 	h := asOf(s, minute(300))
 	var got []float64
 	for n := int64(-1); n < 6; n++ {
-		got = append(got, h.at(hourOf(epoch)+n))
+		got = append(got, h.at(epoch.Hour()+n))
 	}
 	gone := math.NaN()
 	want := []float64{gone, 200, 300, 400, 400, 400, gone}
 	for n := range want {
 		assert.True(t, math.Abs(want[n]-got[n]) < 1e-9 || math.IsNaN(want[n]) && math.IsNaN(got[n]), "hour %d: %v, not %v", n-1, got[n], want[n])
 	}
-	assert.Equal(t, int64(-1), hourOf(-1), "before 1970")
-	assert.Equal(t, int64(-1), hourOf(startOf(-1)))
+	assert.Equal(t, int64(-1), unit.Instant(-1).Hour(), "before 1970")
+	assert.Equal(t, int64(-1), unit.HourStart(-1).Hour())
 }
 
 // TestNightsKnown counts the days on which the hour has a value.
 func TestNightsKnown(t *testing.T) {
 	h := asOf(series(epoch, unit.Hour, make([]float64, 24*9+3)...), epoch.Add(unit.Year))
-	first := hourOf(epoch)
+	first := epoch.Hour()
 	for hour, nights := range map[int64]int{0: 1, 24*8 + 5: 9, 24*9 + 2: 10, 24*9 + 3: 9, 24*30 + 2: 10, 24*30 + 3: 9, -1: 0} {
 		assert.Equal(t, nights, h.nights(first+hour), "hour %d", hour)
 	}
@@ -210,7 +210,7 @@ func TestStepWithoutEnd(t *testing.T) {
 // TestHoursOfARun: a run of 2 h 30 min from 02:15 is read in three parts.
 func TestHoursOfARun(t *testing.T) {
 	start := epoch.Add(2*unit.Hour + 15*unit.Minute)
-	first := hourOf(epoch)
+	first := epoch.Hour()
 	assert.Equal(t, []int64{first + 2, first + 3, first + 4}, hoursOf(start, 150*unit.Minute))
 	assert.Equal(t, []int64{first + 2}, hoursOf(start, 0))
 	got := slots([]firing{{start, 1}, {start.Add(unit.Hour), 0.5}}, 2*unit.Hour)

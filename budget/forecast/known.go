@@ -36,13 +36,13 @@ func (k *Known) asOf(s *grid.Series, now unit.Instant) *hourly {
 func (h *hourly) until(s *grid.Series, now unit.Instant) *hourly {
 	start, end := s.Span()
 	if end = min(end, now); start >= end {
-		return &hourly{first: hourOf(now), end: hourOf(now)}
+		return &hourly{first: now.Hour(), end: now.Hour()}
 	}
-	v := hourly{first: h.first, end: min(h.end, hourOf(end-1)+1), cells: h.cells}
+	v := hourly{first: h.first, end: min(h.end, (end-1).Hour()+1), cells: h.cells}
 	if v.end <= v.first {
-		return &hourly{first: hourOf(now), end: hourOf(now)}
+		return &hourly{first: now.Hour(), end: now.Hour()}
 	}
-	if hour := v.end - 1; startOf(v.end) > end {
+	if hour := v.end - 1; unit.HourStart(v.end) > end {
 		v.cut = h.part(s, hour, end)
 	}
 	for v.end > v.first && math.IsNaN(v.at(v.end-1)) {
@@ -54,7 +54,7 @@ func (h *hourly) until(s *grid.Series, now unit.Instant) *hourly {
 // part is an hour of which only what lies before end is known.
 func (h *hourly) part(s *grid.Series, hour int64, end unit.Instant) *cell {
 	one := &hourly{first: hour, end: hour + 1}
-	one.fill(s.Between(startOf(hour), end), end)
+	one.fill(s.Between(unit.HourStart(hour), end), end)
 	c := one.cells[0]
 	if !math.IsNaN(c.value) {
 		c.sum, c.count = c.value, 1

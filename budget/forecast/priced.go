@@ -106,7 +106,7 @@ func (e *estimate) totals(h *hourly) {
 	if !e.spread {
 		return // a worse note stands already
 	}
-	e.note = fmt.Sprintf("grid known from %d nights only", h.nights(hourOf(e.firings[0].at)))
+	e.note = fmt.Sprintf("grid known from %d nights only", h.nights((e.firings[0].at).Hour()))
 	if e.job.Zone != "" {
 		e.note = e.job.Zone + ": " + e.note
 	}

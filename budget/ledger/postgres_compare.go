@@ -138,7 +138,7 @@ func (v *audit) hour(hour int64, want *figures, got []float64) {
 		}
 		if math.Abs(x-y) > rounding*max(math.Abs(x), math.Abs(y)) {
 			v.findings.Add(finding.Finding{File: v.file, Do: restore, What: fmt.Sprintf(
-				"table ledger_hours does not follow from the lines: in the hour from %s it has %v, the entries %v", startOf(hour), y, x)})
+				"table ledger_hours does not follow from the lines: in the hour from %s it has %v, the entries %v", unit.HourStart(hour), y, x)})
 			return
 		}
 	}

@@ -79,7 +79,7 @@ func (a *addition) share(s *sum, body *string) error {
 func (a *addition) runs(s *sum) int {
 	n := int(s.begun)
 	for _, e := range s.edges {
-		if hour := hourOf(e.begun); e.kept && (hour < a.first || hour >= a.end) {
+		if hour := e.begun.Hour(); e.kept && (hour < a.first || hour >= a.end) {
 			n++
 		}
 	}

@@ -93,8 +93,8 @@ func widen[K comparable](spans map[K]span, k K, s span) {
 
 // goes enters the hours from an attempt's first start to its last end.
 func (o *outline) goes(at stretch, s span) {
-	o.begun[hourRow{at.group, hourOf(s.from)}]++
-	for h := hourOf(s.from); h <= hourOf(s.to); h++ {
+	o.begun[hourRow{at.group, s.from.Hour()}]++
+	for h := s.from.Hour(); h <= s.to.Hour(); h++ {
 		o.going[goingRow{at.group, h, at.attempt}] = true
 	}
 }

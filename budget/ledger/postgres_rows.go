@@ -75,16 +75,6 @@ func encode(v any) string {
 // decimal writes a figure so that the database reads the very same.
 func decimal(x float64) string { return strconv.FormatFloat(x, 'g', -1, 64) }
 
-// hourOf is the hour that holds the instant, counted from 1970.
-func hourOf(t unit.Instant) int64 {
-	const hour = int64(unit.Hour)
-	h := int64(t) / hour
-	if int64(t)%hour < 0 {
-		h--
-	}
-	return h
-}
-
 // bits tell which figures are in doubt, as the database keeps it: 1 the
 // emissions, 2 the energy.
 func (d doubts) bits() (n int64) {
@@ -107,9 +97,6 @@ func dayOf(hour int64) int64 {
 	}
 	return d
 }
-
-// startOf is when the hour starts.
-func startOf(hour int64) unit.Instant { return unit.Instant(hour * int64(unit.Hour)) }
 
 // amount is what of an entry falls into an hour.
 type amount struct {
@@ -135,15 +122,15 @@ func (a amount) figures(d doubts) [5]float64 {
 // amounts shares an entry out over the hours that it touches. Energy has its
 // hours already: none of its spans crosses one.
 func (e *Entry) amounts() []amount {
-	first, last := hourOf(e.Start), hourOf(max(e.End, e.Start))
+	first, last := e.Start.Hour(), max(e.End, e.Start).Hour()
 	list := make([]amount, last-first+1)
 	held := footprint.Booked{Run: footprint.Run{Start: e.Start, End: e.End, Embodied: e.Embodied}}
 	for n := range list {
 		list[n].hour = first + int64(n)
-		list[n].embodied = held.Within(startOf(first+int64(n)), startOf(first+int64(n)+1)).Embodied
+		list[n].embodied = held.Within(unit.HourStart(first+int64(n)), unit.HourStart(first+int64(n)+1)).Embodied
 	}
 	for _, h := range e.Hours {
-		n := hourOf(h.From) - first
+		n := h.From.Hour() - first
 		if n < 0 || n >= int64(len(list)) { // outside the run: in no window that holds it
 			continue
 		}

@@ -49,12 +49,12 @@ type sum struct {
 }
 
 func newAddition(w Window) *addition {
-	a := &addition{Window: w, first: hourOf(w.From), end: hourOf(w.To), lines: map[string]*sum{}}
-	a.edges = []int64{hourOf(w.From)}
-	if startOf(a.first) < w.From {
+	a := &addition{Window: w, first: w.From.Hour(), end: w.To.Hour(), lines: map[string]*sum{}}
+	a.edges = []int64{w.From.Hour()}
+	if unit.HourStart(a.first) < w.From {
 		a.first++
 	}
-	if startOf(a.end) < w.To {
+	if unit.HourStart(a.end) < w.To {
 		a.edges = append(a.edges, a.end)
 	}
 	if a.first >= a.end {
@@ -62,7 +62,7 @@ func newAddition(w Window) *addition {
 		a.cuts = []Window{w}
 		return a
 	}
-	for _, cut := range []Window{{From: w.From, To: startOf(a.first)}, {From: startOf(a.end), To: w.To}} {
+	for _, cut := range []Window{{From: w.From, To: unit.HourStart(a.first)}, {From: unit.HourStart(a.end), To: w.To}} {
 		if cut.From < cut.To {
 			a.cuts = append(a.cuts, cut)
 		}

@@ -61,6 +61,19 @@ func (i Instant) Add(d Duration) Instant {
 	return extreme[Instant](d > 0)
 }
 
+// Hour is the hour of UTC that holds the instant, counted from 1970.
+func (i Instant) Hour() int64 {
+	hour := int64(i) / int64(Hour)
+	if int64(i)%int64(Hour) < 0 { // before 1970
+		hour--
+	}
+	return hour
+}
+
+// HourStart is when an hour counted from 1970 starts. Beyond the range of an
+// Instant it wraps around.
+func HourStart(hour int64) Instant { return Instant(hour * int64(Hour)) }
+
 func extreme[T ~int64](high bool) T {
 	if high {
 		return math.MaxInt64

@@ -93,3 +93,15 @@ func TestInstantPrintsUTC(t *testing.T) {
 	assert.Error(t, at.UnmarshalText([]byte("tomorrow")))
 	assert.Equal(t, "2031-03-04T02:15:00.25Z", at.String(), "a refused text leaves the value")
 }
+
+// TestHour: an hour holds its start and not its end, also before 1970.
+func TestHour(t *testing.T) {
+	for _, hour := range []int64{-3, -1, 0, 1, 500_000} {
+		start := HourStart(hour)
+		for at, want := range map[Instant]int64{start: hour, start - 1: hour - 1, start.Add(Hour) - 1: hour, start.Add(Hour): hour + 1} {
+			if got := at.Hour(); got != want {
+				t.Errorf("%s is in hour %d, want %d", at, got, want)
+			}
+		}
+	}
+}
